@@ -1,0 +1,93 @@
+"""A measured cell: its figures of merit and what else is known of it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from physics.units import ZERO_CELSIUS, Array
+
+UNKNOWN = float("nan")  #: Marks a value that was not measured.
+
+
+@dataclass(frozen=True, eq=False)
+class Cell:
+    """One cell, or an array of them: after construction every field is an array of the one broadcast shape.
+
+    Parameters
+    ----------
+    gap : array_like
+        Gap of the absorber [eV].
+    voc : array_like
+        Open-circuit voltage [V].
+    jsc : array_like
+        Short-circuit current density of the J–V measurement [mA cm⁻²].
+    ff : array_like
+        Fill factor, 0 to 1.
+    temperature : array_like
+        Cell temperature [K].
+    irradiance : array_like
+        Incident power [mW cm⁻²]; NaN takes the spectrum as tabulated.
+    ere : array_like
+        External radiative efficiency at open circuit, 0 to 1; NaN where not measured.
+    ideality : array_like
+        Ideality factor n at the maximum power point; NaN where not known.
+    rs, rsh : array_like
+        Series and shunt resistance [Ω cm²]; NaN where not known.
+    pseudo_ff : array_like
+        Fill factor without series resistance, 0 to 1; NaN where not measured.
+    """
+
+    gap: Array
+    voc: Array
+    jsc: Array
+    ff: Array
+    temperature: Array
+    irradiance: Array
+    ere: Array
+    ideality: Array
+    rs: Array
+    rsh: Array
+    pseudo_ff: Array
+
+    @classmethod
+    def of(
+        cls,
+        *,
+        gap: ArrayLike,
+        voc: ArrayLike,
+        jsc: ArrayLike,
+        ff: ArrayLike,
+        temperature: ArrayLike = ZERO_CELSIUS + 25.0,
+        irradiance: ArrayLike = 100.0,
+        ere: ArrayLike = UNKNOWN,
+        ideality: ArrayLike = UNKNOWN,
+        rs: ArrayLike = UNKNOWN,
+        rsh: ArrayLike = UNKNOWN,
+        pseudo_ff: ArrayLike = UNKNOWN,
+    ) -> Cell:
+        """Cells from scalars and arrays of mutually broadcastable shapes; units as the class says.
+
+        Raises
+        ------
+        ValueError
+            When the shapes do not broadcast.
+        """
+        given = (gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff)
+        return cls(*np.broadcast_arrays(*(np.asarray(value, dtype=float) for value in given)))
+
+    @property
+    def shape(self) -> tuple[int, ...]:
+        """Shape of every field."""
+        return self.gap.shape
+
+    @property
+    def power(self) -> Array:
+        """Maximum power Voc·Jsc·FF [mW cm⁻²]."""
+        return self.jsc * self.voc * self.ff
+
+    def __getitem__(self, index: object) -> Cell:
+        """The cells at an index of the common shape."""
+        return Cell(*(getattr(self, f.name)[index] for f in fields(self)))

@@ -1,0 +1,248 @@
+"""The one-diode curve that runs through a measured Voc and Jsc, and its fill factor.
+
+Written with the junction voltage u = V + J·Rs, every curve through (0, Jsc) and (Voc, 0) is
+
+    J(u) = A (1 − exp((u − Voc)/(n Vt))) + (Voc − u)/Rsh,    V(u) = u − J(u)·Rs,
+    A = [Jsc (1 + Rs/Rsh) − Voc/Rsh] / [1 − exp((Jsc Rs − Voc)/(n Vt))],
+
+which is the usual J = J_L − J0 (exp(u/(n Vt)) − 1) − u/Rsh with J_L and J0 eliminated by the two points
+(A = J0 exp(Voc/(n Vt)); J_L + J0 = A + Voc/Rsh). Nothing overflows, and J and V are explicit in u.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from physics.units import Array, Mask, thermal_voltage
+
+_OHM_CM2 = 1e-3  # mA cm⁻² through Ω cm² gives mV
+_NEWTON_STEPS = 80
+_TOLERANCE = 1e-10  # in units of Voc; the power is stationary there, so the fill factor is good to its square
+
+
+def wright_omega(y: ArrayLike) -> Array:
+    """Solution w of w + ln w = y, which is the Lambert function W(eʸ) without the overflow.
+
+    Parameters
+    ----------
+    y : array_like
+        Any shape, y ≥ −30.
+
+    Returns
+    -------
+    ndarray
+        w, to double precision (held against scipy.special in tests/physics/test_diode.py).
+
+    Notes
+    -----
+    Newton's iteration in w; scipy has this function, but importing scipy.special costs more time than the rest of
+    the program takes to show its window.
+    """
+    y = np.asarray(y, dtype=float)
+    w: Array = np.where(y > 1.0, y - np.log(np.maximum(y, 1.0)), np.exp(np.minimum(y, 1.0) - 1.0))
+    for _ in range(8):
+        step = w * (y - np.log(w) - w) / (1.0 + w)
+        w = np.maximum(w + step, w * 0.1)
+        if not np.any(np.abs(step) > 1e-15 * w):
+            break
+    return w
+
+
+def ideal_fill_factor(v: ArrayLike) -> Array:
+    """Fill factor of a diode without resistances.
+
+    With w + ln(1 + w) = v, which has w = ω(1 + v) − 1, the maximum power lies at V = w n Vt, and
+
+        FF = w² / [(1 + w) v (1 − e⁻ᵛ)].
+
+    Parameters
+    ----------
+    v : array_like
+        Voc/(n Vt), above 0, any shape.
+
+    Returns
+    -------
+    ndarray
+        Fill factor; NaN where v is not positive.
+
+    Notes
+    -----
+    From d(JV)/dV = 0; it is the exact form of which M. A. Green, Solid-State Electron. 24 (1981) 788,
+    doi:10.1016/0038-1101(81)90062-9, gives the approximation [v − ln(v + 0.72)]/(v + 1).
+    """
+    v = np.asarray(v, dtype=float)
+    v = np.where(v > 0, v, np.nan)
+    w = wright_omega(1.0 + v) - 1.0
+    return w * w / ((1.0 + w) * v * -np.expm1(-v))
+
+
+@dataclass(frozen=True, eq=False)
+class Diode:
+    """A one-diode curve through a given Voc and Jsc (all fields broadcastable arrays).
+
+    Parameters
+    ----------
+    voc : array_like
+        Open-circuit voltage [V].
+    jsc : array_like
+        Short-circuit current density [mA cm⁻²].
+    scale : array_like
+        n·Vt [V].
+    rs, rsh : array_like
+        Series and shunt resistance [Ω cm²]; `rsh` may be infinite.
+    """
+
+    voc: Array
+    jsc: Array
+    scale: Array
+    rs: Array
+    rsh: Array
+
+    @classmethod
+    def through(
+        cls,
+        voc: ArrayLike,
+        jsc: ArrayLike,
+        temperature: ArrayLike,
+        ideality: ArrayLike = 1.0,
+        rs: ArrayLike = 0.0,
+        rsh: ArrayLike = np.inf,
+    ) -> Diode:
+        """The curve for an `ideality` n at a `temperature` [K]; other arguments as the class says."""
+        scale = np.asarray(ideality, dtype=float) * thermal_voltage(temperature)
+        arrays = (np.asarray(a, dtype=float) for a in (voc, jsc, scale, rs, rsh))
+        return cls(*np.broadcast_arrays(*arrays))
+
+    @property
+    def possible(self) -> Mask:
+        """Whether such a curve exists: Jsc·Rs < Voc and Jsc (Rsh + Rs) > Voc, all values positive."""
+        with np.errstate(invalid="ignore"):
+            drop = self.jsc * self.rs * _OHM_CM2
+            enough = self.jsc * (self.rsh + self.rs) * _OHM_CM2 > self.voc
+            return (
+                (self.voc > 0) & (self.jsc > 0) & (self.scale > 0) & (self.rs >= 0) & (drop < self.voc) & enough
+            )
+
+    def _amplitude(self) -> Array:
+        conductance = 1.0 / (self.rsh * _OHM_CM2)
+        top = self.jsc * (1.0 + self.rs * _OHM_CM2 * conductance) - self.voc * conductance
+        return top / -np.expm1((self.jsc * self.rs * _OHM_CM2 - self.voc) / self.scale)
+
+    def curve(self, points: int = 160) -> tuple[Array, Array]:
+        """The curve from V = 0 to Voc.
+
+        Parameters
+        ----------
+        points : int
+            Number of points, at least 2.
+
+        Returns
+        -------
+        V, J : ndarray, shape (..., points)
+            Voltages [V] and current densities [mA cm⁻²]; dense where the curve bends. NaN where impossible.
+        """
+        start = (self.jsc * self.rs * _OHM_CM2)[..., None]
+        t = np.linspace(0.0, 1.0, points)
+        u = start + (self.voc[..., None] - start) * (1.0 - (1.0 - t) ** 2)
+        amplitude = np.where(self.possible, self._amplitude(), np.nan)[..., None]
+        lift = self.voc[..., None] - u
+        j = amplitude * -np.expm1(-lift / self.scale[..., None]) + lift / (self.rsh * _OHM_CM2)[..., None]
+        return u - j * (self.rs * _OHM_CM2)[..., None], j
+
+    def maximum_power(self) -> tuple[Array, Array]:
+        """Maximum power point.
+
+        Returns
+        -------
+        V, J : ndarray
+            Voltage [V] and current density [mA cm⁻²] of the point, NaN where no such curve exists.
+
+        Notes
+        -----
+        d(J·V)/du = 0 reads J′ (u − 2 Rs J) + J = 0. It has one root between V = 0 and Voc, since J·V is concave in
+        V; Newton's step is taken where it stays inside the bracket, halving elsewhere.
+        """
+        with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
+            return self._maximum_power()
+
+    def _maximum_power(self) -> tuple[Array, Array]:
+        rs = self.rs * _OHM_CM2
+        conductance = 1.0 / (self.rsh * _OHM_CM2)
+        amplitude = np.where(self.possible, self._amplitude(), np.nan)
+        low, high = self.jsc * rs, self.voc
+        u = self.scale * (wright_omega(1.0 + self.voc / self.scale) - 1.0)
+        u = np.where((u > low) & (u < high), u, 0.5 * (low + high))
+        for _ in range(_NEWTON_STEPS):
+            grown = amplitude * np.exp((u - self.voc) / self.scale)
+            j = amplitude - grown + (self.voc - u) * conductance
+            slope = -grown / self.scale - conductance
+            gain = slope * (u - 2.0 * rs * j) + j
+            bend = -grown / self.scale**2 * (u - 2.0 * rs * j) + 2.0 * slope * (1.0 - rs * slope)
+            low, high = np.where(gain > 0, u, low), np.where(gain > 0, high, u)
+            newton = u - gain / bend
+            better = np.where((newton > low) & (newton < high), newton, 0.5 * (low + high))
+            moved, u = np.abs(better - u), better
+            if not np.any(moved > _TOLERANCE * self.voc):
+                break
+        grown = amplitude * np.exp((u - self.voc) / self.scale)
+        j = amplitude - grown + (self.voc - u) * conductance
+        return u - rs * j, j
+
+    def fill_factor(self) -> Array:
+        """Fill factor of the curve (maximum power over Voc·Jsc); NaN where no such curve exists."""
+        voltage, current = self.maximum_power()
+        return voltage * current / (self.voc * self.jsc)
+
+
+def matching_ideality(
+    ff: ArrayLike,
+    voc: ArrayLike,
+    jsc: ArrayLike,
+    temperature: ArrayLike,
+    rs: ArrayLike = 0.0,
+    rsh: ArrayLike = np.inf,
+) -> Array:
+    """Ideality with which a one-diode curve through Voc and Jsc has a given fill factor.
+
+    Used to draw a curve for a cell of which only the figures of merit are known; no statement about the junction.
+
+    Parameters
+    ----------
+    ff : array_like
+        Fill factor to be met.
+    voc, jsc, temperature, rs, rsh : array_like
+        As in `Diode.through`.
+
+    Returns
+    -------
+    ndarray
+        n between 0.05 and 50, to 1e-6 relative; NaN where no such n exists (a fill factor of 0.25 or less, or one
+        that the resistances alone undercut).
+
+    Notes
+    -----
+    The fill factor falls as n rises, so the bracket is narrowed on a grid of 24 idealities a round, all cells at
+    once.
+    """
+    args = np.broadcast_arrays(*(np.asarray(a, dtype=float) for a in (ff, voc, jsc, temperature, rs, rsh)))
+    ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in args)
+    low = np.full(ff_.shape, np.log(0.05))
+    high = np.full(ff_.shape, np.log(50.0))
+    grid = np.linspace(0.0, 1.0, 24)
+    plain = not (np.any(rs_ > 0) or np.any(np.isfinite(rsh_)))
+    for _ in range(5):
+        ideality = np.exp(low + (high - low) * grid)
+        if plain:
+            reached = ideal_fill_factor(voc_ / (ideality * thermal_voltage(temperature_)))
+        else:
+            reached = Diode.through(voc_, jsc_, temperature_, ideality, rs_, rsh_).fill_factor()
+        above = np.sum(reached >= ff_, axis=-1, keepdims=True)  # how many grid points still exceed the target
+        found = (above > 0) & (above < grid.size)
+        width = (high - low) / (grid.size - 1)
+        low = np.where(found, low + width * (above - 1), np.nan)
+        high = low + width
+    middle: Array = np.exp(0.5 * (low + high))[..., 0]
+    return middle

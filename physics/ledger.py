@@ -1,0 +1,173 @@
+"""The ledger: every line from the sunlight to the cell, adding up exactly."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from physics.attribution import Attribution
+from physics.cell import Cell
+from physics.limit import Faces, Limit, detailed_balance_limit
+from physics.lines import LINES, Form, Line, Section
+from physics.quantities import Quantities, quantities_of
+from physics.spectrum import Illumination
+from physics.units import Array, Indices, Mask
+
+
+@dataclass(frozen=True, eq=False)
+class Entry:
+    """One line worked out for all cells.
+
+    Parameters
+    ----------
+    line : Line
+        What the line is.
+    delta : ndarray
+        Change of the line's factor, positive for a loss [unit of the factor]; 0 where the cell has no such line.
+    loss : ndarray
+        Power that the change costs [mW cm⁻²].
+    form : ndarray of int
+        Index into `line.forms` of the form used, −1 where the cell has no such line.
+    """
+
+    line: Line
+    delta: Array
+    loss: Array
+    form: Indices
+
+    @property
+    def present(self) -> Mask:
+        """Which cells have this line."""
+        return self.form >= 0
+
+    def form_at(self, index: tuple[int, ...] | int = ()) -> Form | None:
+        """The form used for the cell at `index`, or None where it has no such line."""
+        chosen = int(self.form[index])
+        return self.line.forms[chosen] if chosen >= 0 else None
+
+
+@dataclass(frozen=True, eq=False)
+class Ledger:
+    """Where the watts of a cell went.
+
+    Parameters
+    ----------
+    cell : Cell
+        The measured cells.
+    limit : Limit
+        Their limits.
+    quantities : Quantities
+        Every number that the lines are made of.
+    entries : tuple of Entry
+        In the order of `physics.lines.LINES`.
+    attribution : {"log-mean", "ladder"}
+        Convention that was used.
+    """
+
+    cell: Cell
+    limit: Limit
+    quantities: Quantities
+    entries: tuple[Entry, ...]
+    attribution: Attribution
+
+    def __getitem__(self, key: str) -> Entry:
+        """The entry of the line called `key`; KeyError where there is none."""
+        for entry in self.entries:
+            if entry.line.key == key:
+                return entry
+        raise KeyError(key)
+
+    @property
+    def efficiency(self) -> Array:
+        """Power of the cell over incident power."""
+        return self.cell.power / self.limit.incident
+
+    @property
+    def ere(self) -> Array:
+        """External radiative efficiency: measured, or exp((Voc − Voc_rad)/Vt) by reciprocity (Rau 2007)."""
+        q = self.quantities
+        return np.where(np.isnan(q.ere), np.exp((q.voc - q.voc_rad) / q.vt), q.ere)
+
+    @property
+    def closure(self) -> Array:
+        """Incident power less all lines less the power of the cell [mW cm⁻²]: rounding alone."""
+        return self.limit.incident - sum(e.loss for e in self.entries) - self.cell.power
+
+    def factors(self) -> dict[str, tuple[Array, Array]]:
+        """The product behind the sums, for the limit and for the cell.
+
+        Efficiency = ultimate efficiency × gap utilisation (q Voc/Eg) × fill factor × collection (Jsc/J_lim).
+
+        Returns
+        -------
+        dict of str to (ndarray, ndarray)
+            By name: value of the limit, value of the cell.
+        """
+        limit, cell = self.limit, self.cell
+        ultimate = limit.ultimate_efficiency
+        return {
+            "ultimate efficiency": (ultimate, ultimate),
+            "gap utilisation": (limit.voc / limit.gap, cell.voc / limit.gap),
+            "fill factor": (limit.ff, cell.ff),
+            "collection": (np.ones_like(limit.jsc), cell.jsc / limit.jsc),
+        }
+
+
+def _work_out(line: Line, q: Quantities) -> Entry:
+    """One line for all cells: the first form that applies to a cell gives its Δ."""
+    first = line.forms[0]
+    if first.applies is None:
+        delta, form = first.delta(q), np.zeros(q.incident.shape, dtype=np.intp)
+    else:
+        delta, form = np.zeros_like(q.incident), np.full(q.incident.shape, -1, dtype=np.intp)
+        for index, option in enumerate(line.forms):
+            free = form < 0
+            chosen = free if option.applies is None else free & option.applies(q)
+            if np.any(chosen):
+                delta = np.where(chosen, option.delta(q), delta)
+                form = np.where(chosen, index, form)
+    return Entry(line, delta, line.factor.weight(q) * delta, form)
+
+
+def ledger_against(cell: Cell, limit: Limit, attribution: Attribution = "log-mean") -> Ledger:
+    """Ledger of cells against limits of the same shape that are at hand already; see `ledger_of`."""
+    with np.errstate(invalid="ignore", divide="ignore"):
+        q = quantities_of(cell, limit, attribution)
+        return Ledger(cell, limit, q, tuple(_work_out(line, q) for line in LINES), attribution)
+
+
+def ledger_of(
+    cell: Cell, light: Illumination, attribution: Attribution = "log-mean", faces: Faces = 1
+) -> Ledger:
+    """Ledger of measured cells against the detailed-balance limits of their gaps.
+
+    Parameters
+    ----------
+    cell : Cell
+        One cell or an array of them.
+    light : Illumination
+        Spectrum under which they were measured.
+    attribution : {"log-mean", "ladder"}
+        How the difference is shared among current, voltage and fill factor (`physics.attribution`).
+    faces : {1, 2}
+        Faces from which the limit emits.
+
+    Returns
+    -------
+    Ledger
+        Every array of the cells' shape; NaN for a cell with an impossible value. Σ losses = incident − cell power to
+        rounding, whatever the signs.
+
+    Raises
+    ------
+    ValueError
+        For an unknown attribution.
+    """
+    limit = detailed_balance_limit(cell.gap, cell.temperature, light, cell.irradiance, faces)
+    return ledger_against(cell, limit, attribution)
+
+
+def entries_of(ledger: Ledger, section: Section) -> tuple[Entry, ...]:
+    """The entries of one half of the way, in order."""
+    return tuple(entry for entry in ledger.entries if entry.line.section is section)

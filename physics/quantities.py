@@ -1,0 +1,174 @@
+"""Every number that a ledger line may be made of, by name, with its symbol and unit."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field, fields
+from typing import Any
+
+import numpy as np
+
+from physics.attribution import Attribution, factor_weights
+from physics.cell import Cell
+from physics.diode import Diode, ideal_fill_factor
+from physics.limit import Limit
+from physics.units import Array, Mask, thermal_voltage
+
+
+@dataclass(frozen=True)
+class Meaning:
+    """What a quantity is: its symbol ("_" starts a subscript), unit ("" for a pure number) and name."""
+
+    symbol: str
+    unit: str
+    title: str
+
+
+def _quantity(symbol: str, unit: str, title: str) -> Any:
+    return field(metadata={"meaning": Meaning(symbol, unit, title)})
+
+
+@dataclass(frozen=True, eq=False)
+class Quantities:
+    """The numbers of a ledger, all of one broadcast shape; NaN where unknown. Units stand beside each field."""
+
+    incident: Array = _quantity("P_sun", "mW cm⁻²", "incident power")
+    above_gap: Array = _quantity("P_above", "mW cm⁻²", "power in photons above the gap")
+    gap: Array = _quantity("E_g", "eV", "gap")
+    temperature: Array = _quantity("T", "K", "cell temperature")
+    vt: Array = _quantity("V_t", "V", "thermal voltage kT/q")
+    jsc_limit: Array = _quantity("J_lim", "mA cm⁻²", "photon current above the gap")
+    j0_limit: Array = _quantity("J_0,lim", "mA cm⁻²", "thermal emission above the gap")
+    voc_limit: Array = _quantity("V_lim", "V", "open-circuit voltage of the limit")
+    ff_limit: Array = _quantity("FF_lim", "", "fill factor of the limit")
+    power_limit: Array = _quantity("P_lim", "mW cm⁻²", "power of the limit")
+    jsc: Array = _quantity("J_sc", "mA cm⁻²", "short-circuit current density of the cell")
+    voc: Array = _quantity("V_oc", "V", "open-circuit voltage of the cell")
+    ff: Array = _quantity("FF", "", "fill factor of the cell")
+    power: Array = _quantity("P_cell", "mW cm⁻²", "power of the cell")
+    voc_limit_at_jsc: Array = _quantity("V_lim(J_sc)", "V", "step-edge voltage at the cell's own current")
+    j0_rad: Array = _quantity("J_0,rad", "mA cm⁻²", "radiative recombination current of the cell")
+    voc_rad: Array = _quantity("V_rad", "V", "radiative voltage of the cell")
+    ere: Array = _quantity("ERE", "", "external radiative efficiency")
+    ideality: Array = _quantity("n", "", "ideality factor")
+    rs: Array = _quantity("R_s", "Ω cm²", "series resistance")
+    rsh: Array = _quantity("R_sh", "Ω cm²", "shunt resistance")
+    pseudo_ff: Array = _quantity("pFF", "", "fill factor without series resistance")
+    ff_voltage: Array = _quantity("FF_n=1", "", "ideal diode, n = 1, at the cell's V_oc")
+    ff_ideality: Array = _quantity("FF_n", "", "diode with the cell's n")
+    ff_without_rs: Array = _quantity("FF_no Rs", "", "diode before R_s is added")
+    ff_with_rs: Array = _quantity("FF_with Rs", "", "the same diode with R_s")
+    ff_without_rsh: Array = _quantity("FF_no Rsh", "", "diode before R_sh is added")
+    ff_with_rsh: Array = _quantity("FF_with Rsh", "", "the same diode with R_sh")
+    ff_diode: Array = _quantity("FF_diode", "", "diode with all that is known of n, R_s and R_sh")
+    ff_diode_shunt: Array = _quantity("FF_diode, no Rs", "", "diode with all that is known of n and R_sh")
+    weight_current: Array = _quantity("w_J", "V", "power per unit of current")
+    weight_voltage: Array = _quantity("w_V", "mA cm⁻²", "power per unit of voltage")
+    weight_fill: Array = _quantity("w_FF", "mW cm⁻²", "power per unit of fill factor")
+
+
+def meaning(name: str) -> Meaning:
+    """Meaning of the quantity called `name`.
+
+    Raises
+    ------
+    KeyError
+        When there is none of that name.
+    """
+    return _MEANINGS[name]
+
+
+_MEANINGS: dict[str, Meaning] = {f.name: f.metadata["meaning"] for f in fields(Quantities)}
+
+
+def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantities:
+    """All quantities of a ledger.
+
+    Parameters
+    ----------
+    cell : Cell
+        The measured cells.
+    limit : Limit
+        Their limits, of the same shape.
+    attribution : {"log-mean", "ladder"}
+        Convention for the weights.
+
+    Returns
+    -------
+    Quantities
+        Without an EQE the absorption edge is taken as a step, so `j0_rad` is `j0_limit`.
+    """
+    vt = thermal_voltage(cell.temperature)
+    voc_limit_at_jsc = vt * np.log1p(cell.jsc / limit.j0)
+    weights = factor_weights(
+        (limit.jsc, limit.voc, limit.ff), (cell.jsc, cell.voc, cell.ff), attribution
+    )
+    return Quantities(
+        incident=limit.incident,
+        above_gap=limit.above_gap,
+        gap=limit.gap,
+        temperature=limit.temperature,
+        vt=vt,
+        jsc_limit=limit.jsc,
+        j0_limit=limit.j0,
+        voc_limit=limit.voc,
+        ff_limit=limit.ff,
+        power_limit=limit.power,
+        jsc=cell.jsc,
+        voc=cell.voc,
+        ff=cell.ff,
+        power=cell.power,
+        voc_limit_at_jsc=voc_limit_at_jsc,
+        j0_rad=limit.j0,
+        voc_rad=voc_limit_at_jsc,
+        ere=cell.ere,
+        ideality=cell.ideality,
+        rs=cell.rs,
+        rsh=cell.rsh,
+        pseudo_ff=cell.pseudo_ff,
+        **_fill_factors(cell, vt),
+        weight_current=weights[0],
+        weight_voltage=weights[1],
+        weight_fill=weights[2],
+    )
+
+
+def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
+    """Fill factors of one-diode curves through the measured Jsc and Voc, adding one known thing at a time.
+
+    What is unknown is left out, and then the state equals the one before it bit for bit, so that its line is zero.
+    The ideality comes first. Then Rs and Rsh; but where a fill factor without series resistance was measured, Rsh
+    and then Rs, so that what stands before that fill factor holds no Rs.
+    """
+    ideality = np.where(np.isnan(cell.ideality), 1.0, cell.ideality)
+    has_rs, has_rsh = ~np.isnan(cell.rs), ~np.isnan(cell.rsh)
+    plain = ideal_fill_factor(cell.voc / (ideality * vt))
+
+    nowhere = np.zeros_like(has_rs)
+    states = _with_resistances(
+        cell, ideality, plain, np.stack([has_rs, nowhere, has_rs]), np.stack([nowhere, has_rsh, has_rsh])
+    )
+    series, shunt, diode = states[0], states[1], states[2]
+    shunt_first = ~np.isnan(cell.pseudo_ff)
+    return {
+        "ff_voltage": ideal_fill_factor(cell.voc / vt),
+        "ff_ideality": plain,
+        "ff_without_rs": np.where(shunt_first, shunt, plain),
+        "ff_with_rs": np.where(shunt_first, diode, series),
+        "ff_without_rsh": np.where(shunt_first, plain, series),
+        "ff_with_rsh": np.where(shunt_first, shunt, diode),
+        "ff_diode": diode,
+        "ff_diode_shunt": shunt,
+    }
+
+
+def _with_resistances(cell: Cell, ideality: Array, plain: Array, rs_known: Mask, rsh_known: Mask) -> Array:
+    """Fill factors with Rs and Rsh where the masks say so, and `plain` itself where neither is known.
+
+    The masks have one axis more than the cells, so that all states share one search for the maximum power.
+    """
+    known = rs_known | rsh_known
+    if not np.any(known):
+        return np.broadcast_to(plain, known.shape)
+    rs, rsh = np.where(rs_known, cell.rs, 0.0), np.where(rsh_known, cell.rsh, np.inf)
+    diode = Diode.through(cell.voc, cell.jsc, cell.temperature, ideality, rs, rsh)
+    return np.where(known, diode.fill_factor(), plain)
