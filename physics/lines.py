@@ -249,7 +249,7 @@ LINES: tuple[Line, ...] = (
         "fill_recombination", "Recombination and shunts, by the pseudo fill factor", "recombination", Family.FILL,
         Section.LIMIT_TO_CELL, FILL,
         (Form(
-            "{ff_diode_shunt} − {pseudo_ff}", lambda q: q.ff_diode_shunt - q.pseudo_ff,
+            "{ff_with_rsh} − {pseudo_ff}", lambda q: q.ff_with_rsh - q.pseudo_ff,
             Basis.MEASURED, "", _HAS_PFF,
         ),),
         _DIFFERENCE,

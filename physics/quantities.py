@@ -60,7 +60,6 @@ class Quantities:
     ff_without_rsh: Array = _quantity("FF_no Rsh", "", "diode before R_sh is added")
     ff_with_rsh: Array = _quantity("FF_with Rsh", "", "the same diode with R_sh")
     ff_diode: Array = _quantity("FF_diode", "", "diode with all that is known of n, R_s and R_sh")
-    ff_diode_shunt: Array = _quantity("FF_diode, no Rs", "", "diode with all that is known of n and R_sh")
     weight_current: Array = _quantity("w_J", "V", "power per unit of current")
     weight_voltage: Array = _quantity("w_V", "mA cm⁻²", "power per unit of voltage")
     weight_fill: Array = _quantity("w_FF", "mW cm⁻²", "power per unit of fill factor")
@@ -143,21 +142,22 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
     has_rs, has_rsh = ~np.isnan(cell.rs), ~np.isnan(cell.rsh)
     plain = ideal_fill_factor(cell.voc / (ideality * vt))
 
-    nowhere = np.zeros_like(has_rs)
-    states = _with_resistances(
-        cell, ideality, plain, np.stack([has_rs, nowhere, has_rs]), np.stack([nowhere, has_rsh, has_rsh])
-    )
-    series, shunt, diode = states[0], states[1], states[2]
     shunt_first = ~np.isnan(cell.pseudo_ff)
+    first, diode = _with_resistances(
+        cell,
+        ideality,
+        plain,
+        np.stack([has_rs & ~shunt_first, has_rs]),
+        np.stack([has_rsh & shunt_first, has_rsh]),
+    )
     return {
         "ff_voltage": ideal_fill_factor(cell.voc / vt),
         "ff_ideality": plain,
-        "ff_without_rs": np.where(shunt_first, shunt, plain),
-        "ff_with_rs": np.where(shunt_first, diode, series),
-        "ff_without_rsh": np.where(shunt_first, plain, series),
-        "ff_with_rsh": np.where(shunt_first, shunt, diode),
+        "ff_without_rs": np.where(shunt_first, first, plain),
+        "ff_with_rs": np.where(shunt_first, diode, first),
+        "ff_without_rsh": np.where(shunt_first, plain, first),
+        "ff_with_rsh": np.where(shunt_first, first, diode),
         "ff_diode": diode,
-        "ff_diode_shunt": shunt,
     }
 
 
