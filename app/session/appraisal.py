@@ -1,0 +1,154 @@
+"""What is wrong with a cell's inputs, and its ledger where nothing is."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from app.session.fields import FIELD_BY_KEY, FIELDS
+from app.session.state import CellEntry, Choices, Unread
+from physics.cell import UNKNOWN, Cell
+from physics.checks import Check, Severity, failed
+from physics.ledger import Ledger, ledger_of
+from physics.spectrum import REFERENCE_NAMES, Illumination, illumination
+from physics.units import Array
+
+
+@dataclass(frozen=True)
+class Problem:
+    """Something wrong or doubtful about one field.
+
+    Parameters
+    ----------
+    field : str
+        Key of the field, "spectrum" for the light, or "" for the cell as a whole.
+    severity : Severity
+    message : str
+        One plain sentence.
+    """
+
+    field: str
+    severity: Severity
+    message: str
+
+
+@dataclass(frozen=True, eq=False)
+class Appraisal:
+    """A cell's problems, and its ledger unless a problem forbids one."""
+
+    entry: CellEntry
+    problems: tuple[Problem, ...]
+    ledger: Ledger | None
+
+    def about(self, field: str) -> Problem | None:
+        """The gravest problem of a field, or None."""
+        mine = [p for p in self.problems if p.field == field]
+        mine.sort(key=lambda p: p.severity is not Severity.IMPOSSIBLE)
+        return mine[0] if mine else None
+
+
+@lru_cache(maxsize=64)
+def light_named(name: str) -> Illumination:
+    """The illumination of a short name.
+
+    Raises
+    ------
+    ValueError
+        With a sentence for the user, where there is none of that name.
+    """
+    try:
+        return illumination(name)
+    except ValueError as fault:
+        known = ", ".join(REFERENCE_NAMES)
+        if name.strip().lower().startswith("blackbody:"):
+            raise ValueError(
+                f"The spectrum {name!r} is no black body: write blackbody: and a temperature between 1000 and 20000 K, "
+                "such as blackbody:6000."
+            ) from fault
+        raise ValueError(
+            f"The spectrum {name!r} is not known here: use {known}, or blackbody:6000 for a black body of 6000 K."
+        ) from fault
+
+
+def gap_fault(gap: float, light: Illumination) -> str:
+    """Sentence about a gap that the light does not cover, or an empty text."""
+    low, high = light.gap_range
+    if low <= gap <= high:
+        return ""
+    return f"The spectrum covers gaps from {low:.3g} to {high:.3g} eV; this gap lies outside."
+
+
+def field_problems(values: Mapping[str, object]) -> list[Problem]:
+    """Problems that each field shows by itself: missing, unreadable, out of range."""
+    found = []
+    for field in FIELDS:
+        value = values.get(field.key)
+        if isinstance(value, Unread):
+            sentence = value.fault
+        elif value is None:
+            sentence = f"{field.symbol} is missing: type it in{f' {field.unit}' if field.unit else ''}."
+            if not field.required:
+                continue
+        else:
+            sentence = field.fault(float(value))  # type: ignore[arg-type]
+        if sentence:
+            found.append(Problem(field.key, Severity.IMPOSSIBLE, sentence))
+    return found
+
+
+def check_sentence(check: Check, ledger: Ledger, index: int | tuple[int, ...] = ()) -> str:
+    """A check's sentence with the numbers of one cell in it."""
+    q = ledger.quantities
+    names = {name: float(getattr(q, name)[index]) for name in q.__dataclass_fields__ if f"{{{name}" in check.message}
+    return check.message.format(**names)
+
+
+def physics_values(columns: Mapping[str, object]) -> dict[str, Array]:
+    """Inputs of `physics.cell.Cell` from numbers or arrays in the fields' units (NaN or None: default or unknown)."""
+    arguments = {}
+    for field in FIELDS:
+        if field.key == "area":
+            continue
+        given = columns.get(field.key)
+        array = np.asarray(UNKNOWN if given is None else given, dtype=float)
+        if field.default is not None:
+            array = np.where(np.isnan(array), field.default, array)
+        arguments[field.key] = field.to_physics(array)
+    return arguments
+
+
+def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
+    """Check one cell and work out its ledger.
+
+    Parameters
+    ----------
+    entry : CellEntry
+        The cell as typed.
+    choices : Choices
+        Conventions.
+
+    Returns
+    -------
+    Appraisal
+        `ledger` is None where a problem is of the kind that forbids one.
+    """
+    problems = field_problems(entry.values)
+    light = None
+    try:
+        light = light_named(entry.spectrum)
+    except ValueError as fault:
+        problems.append(Problem("spectrum", Severity.IMPOSSIBLE, str(fault)))
+    gap = entry.values.get("gap")
+    if light is not None and isinstance(gap, float) and not FIELD_BY_KEY["gap"].fault(gap):
+        sentence = gap_fault(gap, light)
+        if sentence:
+            problems.append(Problem("gap", Severity.IMPOSSIBLE, sentence))
+    if problems or light is None:
+        return Appraisal(entry, tuple(problems), None)
+    ledger = ledger_of(Cell.of(**physics_values(entry.values)), light, choices.attribution, choices.faces)
+    problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in failed(ledger)]
+    forbidden = any(p.severity is Severity.IMPOSSIBLE for p in problems)
+    return Appraisal(entry, tuple(problems), None if forbidden else ledger)

@@ -1,0 +1,141 @@
+"""All that the views show of the cell on show, worked out once per change."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from app.session.appraisal import Appraisal, appraise, light_named
+from app.session.session import Session
+from app.session.state import CellEntry, Choices
+from physics.diode import Diode, matching_ideality
+from physics.ledger import Ledger
+from physics.limit import Faces, Limit, detailed_balance_limit
+from physics.units import Array
+
+_GAP_POINTS = 241
+
+
+@dataclass(frozen=True, eq=False)
+class Curve:
+    """A J–V curve [V; mA cm⁻²] and the ideality with which it was drawn (NaN where none could be)."""
+
+    voltage: Array
+    current: Array
+    ideality: float
+
+
+@dataclass(frozen=True, eq=False)
+class Picture:
+    """A cell's ledger with the curves that go with it.
+
+    Parameters
+    ----------
+    entry : CellEntry
+        The inputs it was made of.
+    choices : Choices
+        The conventions it was made with.
+    ledger : Ledger
+        Ledger of that one cell (shape ()).
+    cell_curve, limit_curve : Curve
+        J–V curve through the cell's Voc, Jsc and FF, and that of its limit.
+    gap_curve : Limit
+        Limits over the gaps that a single junction may have, same light and temperature, shape (n,).
+    """
+
+    entry: CellEntry
+    choices: Choices
+    ledger: Ledger
+    cell_curve: Curve
+    limit_curve: Curve
+    gap_curve: Limit
+
+
+@dataclass(frozen=True, eq=False)
+class Outcome:
+    """The cell on show: its problems, and the last picture that could be made of it.
+
+    Parameters
+    ----------
+    appraisal : Appraisal or None
+        None where the shelf is empty.
+    picture : Picture or None
+        None where the cell never had a valid set of inputs.
+    stale : bool
+        The picture is of earlier inputs, because the present ones allow none.
+    """
+
+    appraisal: Appraisal | None
+    picture: Picture | None
+    stale: bool
+
+
+def cell_curve(ledger: Ledger) -> Curve:
+    """One-diode curve through Voc, Jsc and FF, with the Rs and Rsh given and the ideality that meets FF.
+
+    Where no ideality does, the resistances are left out; below a fill factor of a quarter there is no such curve.
+    """
+    cell = ledger.cell
+    rs = np.where(np.isnan(cell.rs), 0.0, cell.rs)
+    rsh = np.where(np.isnan(cell.rsh), np.inf, cell.rsh)
+    ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature, rs, rsh)
+    if np.isnan(ideality) and (rs > 0 or np.isfinite(rsh)):
+        rs, rsh = np.zeros_like(rs), np.full_like(rsh, np.inf)
+        ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature)
+    voltage, current = Diode.through(cell.voc, cell.jsc, cell.temperature, ideality, rs, rsh).curve()
+    return Curve(voltage, current, float(ideality))
+
+
+def limit_curve(limit: Limit) -> Curve:
+    """J–V curve of a limit."""
+    voltage, current = Diode.through(limit.voc, limit.jsc, limit.temperature).curve()
+    return Curve(voltage, current, 1.0)
+
+
+@lru_cache(maxsize=8)
+def gap_curve(spectrum: str, irradiance: float, temperature: float, faces: Faces) -> Limit:
+    """Limits over the range of gaps worth plotting; temperature [K], irradiance [mW cm⁻²]."""
+    light = light_named(spectrum)
+    low, high = light.gap_range
+    gaps = np.linspace(max(low * (1 + 1e-9), 0.4), min(high * (1 - 1e-9), 3.0), _GAP_POINTS)
+    return detailed_balance_limit(gaps, temperature, light, irradiance, faces)
+
+
+def picture_of(appraisal: Appraisal, choices: Choices) -> Picture | None:
+    """The picture of a cell that has a ledger; None where it has none."""
+    ledger, entry = appraisal.ledger, appraisal.entry
+    if ledger is None:
+        return None
+    cell = ledger.cell
+    gaps = gap_curve(entry.spectrum, float(cell.irradiance), float(cell.temperature), choices.faces)
+    return Picture(entry, choices, ledger, cell_curve(ledger), limit_curve(ledger.limit), gaps)
+
+
+class Outcomes:
+    """Works out the outcome of a session and remembers the last good picture of each cell."""
+
+    def __init__(self, session: Session) -> None:
+        self._session = session
+        self._pictures: dict[int, Picture] = {}
+        self._latest: tuple[CellEntry | None, Choices | None, Outcome] | None = None
+
+    def current(self) -> Outcome:
+        """The outcome for the cell on show."""
+        state = self._session.state
+        entry, choices = state.cell, state.choices
+        if self._latest is not None and self._latest[0] is entry and self._latest[1] is choices:
+            return self._latest[2]
+        outcome = self._of(entry, choices)
+        self._latest = (entry, choices, outcome)
+        return outcome
+
+    def _of(self, entry: CellEntry | None, choices: Choices) -> Outcome:
+        if entry is None:
+            return Outcome(None, None, False)
+        appraisal = appraise(entry, choices)
+        fresh = picture_of(appraisal, choices)
+        if fresh is not None:
+            self._pictures[entry.ident] = fresh
+        return Outcome(appraisal, self._pictures.get(entry.ident), fresh is None)

@@ -1,0 +1,111 @@
+"""The session: its state, how it changes, and who is told."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+from app.session.commands import Command
+from app.session.state import State
+
+_DEEPEST = 1000  # steps of undo that are kept; states share all they have in common, so a step is small
+
+
+@dataclass(frozen=True)
+class Step:
+    """One change that can be undone."""
+
+    name: str
+    merge: object
+    before: State
+    after: State
+
+
+class Session:
+    """Holds the state. Every change goes through `do` and can be undone.
+
+    Listeners are called without arguments after each change of the state.
+    """
+
+    def __init__(self, state: State | None = None) -> None:
+        self._state = state or State()
+        self._done: list[Step] = []
+        self._undone: list[Step] = []
+        self._gesture_open = False
+        self._listeners: list[Callable[[], None]] = []
+
+    @property
+    def state(self) -> State:
+        """What the session holds now."""
+        return self._state
+
+    def listen(self, listener: Callable[[], None]) -> None:
+        """Call `listener` after each change."""
+        self._listeners.append(listener)
+
+    def do(self, command: Command) -> None:
+        """Carry out a command. It counts for undo only after it succeeded and where it changed something."""
+        before = self._state
+        after = command.apply(before)
+        if after == before:
+            return
+        step = Step(command.name, command.merge, before, after)
+        last = self._done[-1] if self._done else None
+        if self._gesture_open and last is not None and step.merge is not None and last.merge == step.merge:
+            self._done[-1] = replace(last, after=after)
+        else:
+            self._done.append(step)
+            del self._done[:-_DEEPEST]
+        self._gesture_open = True
+        self._undone.clear()
+        self._become(after)
+
+    def settle(self) -> None:
+        """End a gesture (a slider drag, a visit to a field): what follows is a new step of undo."""
+        self._gesture_open = False
+
+    def pick(self, ident: int) -> None:
+        """Show another cell. Looking is no change, so it is no step of undo. KeyError for an unknown cell."""
+        self._state.position(ident)
+        self.settle()
+        self._become(replace(self._state, picked=ident))
+
+    def pick_line(self, key: str) -> None:
+        """Show how another line was found."""
+        self._become(replace(self._state, line=key))
+
+    @property
+    def undo_name(self) -> str:
+        """Name of what `undo` would take back, or an empty text."""
+        return self._done[-1].name if self._done else ""
+
+    @property
+    def redo_name(self) -> str:
+        """Name of what `redo` would do again, or an empty text."""
+        return self._undone[-1].name if self._undone else ""
+
+    def undo(self) -> None:
+        """Take back the last change, and show the cell it was made on."""
+        if self._done:
+            step = self._done.pop()
+            self._undone.append(step)
+            self._travel(step.before)
+
+    def redo(self) -> None:
+        """Do again what was taken back last."""
+        if self._undone:
+            step = self._undone.pop()
+            self._done.append(step)
+            self._travel(step.after)
+
+    def _travel(self, state: State) -> None:
+        self.settle()
+        highest = max(state.next_ident, self._state.next_ident)
+        self._become(replace(state, line=self._state.line, next_ident=highest))
+
+    def _become(self, state: State) -> None:
+        if state == self._state:
+            return
+        self._state = state
+        for listener in tuple(self._listeners):
+            listener()

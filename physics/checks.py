@@ -1,0 +1,123 @@
+"""Whether the figures of a cell can be right, as masks over all cells at once.
+
+Each check carries its sentence as a template whose names are fields of `physics.quantities.Quantities`; whoever
+shows it fills in the numbers.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from enum import Enum
+
+import numpy as np
+
+from physics.diode import Diode
+from physics.ledger import Ledger
+from physics.units import Mask
+
+_ROUNDING = 1.0 + 1e-9  # a cell that equals its limit is not above it
+
+
+class Severity(Enum):
+    """What a check means for the result."""
+
+    IMPOSSIBLE = "refused"  # no ledger can be made of it
+    DOUBTFUL = "doubtful"  # the ledger stands, the figure wants a second look
+
+
+@dataclass(frozen=True)
+class Check:
+    """One check.
+
+    Parameters
+    ----------
+    key : str
+        Name of the check.
+    field : str
+        Field of `physics.cell.Cell` beside which it is told.
+    severity : Severity
+    hit : callable
+        Ledger -> mask of the cells that fail.
+    message : str
+        One sentence; names in braces, with a format, are fields of `Quantities`.
+    """
+
+    key: str
+    field: str
+    severity: Severity
+    hit: Callable[[Ledger], Mask]
+    message: str
+
+
+def _diode(ledger: Ledger) -> Diode:
+    cell = ledger.cell
+    rs = np.where(np.isnan(cell.rs), 0.0, cell.rs)
+    rsh = np.where(np.isnan(cell.rsh), np.inf, cell.rsh)
+    return Diode.through(cell.voc, cell.jsc, cell.temperature, 1.0, rs, rsh)
+
+
+CHECKS: tuple[Check, ...] = (
+    Check(
+        "voc_above_limit", "voc", Severity.IMPOSSIBLE,
+        lambda s: s.cell.voc > s.limit.voc * _ROUNDING,
+        "Voc is above the limit of {voc_limit:.4g} V for a gap of {gap:.4g} eV: check Voc, its unit, and the gap.",
+    ),
+    Check(
+        "power_above_limit", "ff", Severity.IMPOSSIBLE,
+        lambda s: (s.cell.power > s.limit.power * _ROUNDING) & ~(s.cell.voc > s.limit.voc * _ROUNDING),
+        "Voc × Jsc × FF is {power:.4g} mW cm⁻², above the limit of {power_limit:.4g} mW cm⁻² for this gap and light: "
+        "check the figures, the area and the irradiance.",
+    ),
+    Check(
+        "rs_too_large", "rs", Severity.IMPOSSIBLE,
+        lambda s: ~np.isnan(s.cell.rs) & ~_diode(s).drop_below_voc,
+        "Rs × Jsc would be more than Voc: no diode curve can do that. Give Rs in Ω cm², not in Ω.",
+    ),
+    Check(
+        "rsh_too_small", "rsh", Severity.IMPOSSIBLE,
+        lambda s: ~np.isnan(s.cell.rsh) & ~_diode(s).shunt_above_line,
+        "So low an Rsh would draw more than Jsc before Voc is reached: no diode curve can do that. "
+        "Give Rsh in Ω cm², not in Ω.",
+    ),
+    Check(
+        "jsc_above_limit", "jsc", Severity.DOUBTFUL,
+        lambda s: s.cell.jsc > s.limit.jsc * _ROUNDING,
+        "Jsc is above the {jsc_limit:.4g} mA cm⁻² that the light holds above this gap: check the area (mask), the "
+        "irradiance and the gap.",
+    ),
+    Check(
+        "voc_above_radiative", "voc", Severity.DOUBTFUL,
+        lambda s: (s.cell.voc > s.quantities.voc_rad * _ROUNDING) & (s.cell.voc <= s.limit.voc * _ROUNDING),
+        "Voc is above the {voc_rad:.4g} V that the cell's own Jsc allows with a step edge, so the non-radiative line "
+        "comes out negative: check Jsc and the gap.",
+    ),
+    Check(
+        "ere_contradicts_voc", "ere", Severity.DOUBTFUL,
+        lambda s: np.abs(s["voltage_residual"].delta) > 0.03,
+        "This ERE and Voc disagree by more than 30 mV with a step edge; the difference stands in a line of its own.",
+    ),
+    Check(
+        "ff_above_ideal", "ff", Severity.DOUBTFUL,
+        lambda s: np.isnan(s.cell.ideality) & (s.cell.ff > s.quantities.ff_voltage * _ROUNDING),
+        "FF is above that of an ideal diode with n = 1 at this Voc. With Auger recombination, as in silicon, n falls "
+        "below 1 and this is right; otherwise check FF.",
+    ),
+    Check(
+        "ff_below_quarter", "ff", Severity.DOUBTFUL,
+        lambda s: s.cell.ff <= 0.25,
+        "An FF of 25 % or less means an S-shaped or straight J–V curve, which no diode with resistances describes.",
+    ),
+    Check(
+        "pseudo_ff_below_ff", "pseudo_ff", Severity.DOUBTFUL,
+        lambda s: s.cell.pseudo_ff < s.cell.ff,
+        "The pseudo fill factor is below FF, though it lacks the series resistance: check both.",
+    ),
+)
+
+
+def failed(ledger: Ledger) -> list[tuple[Check, Mask]]:
+    """Checks that at least one cell fails, with the mask of the cells concerned (shape of the cells)."""
+    with np.errstate(invalid="ignore"):
+        hits = ((check, check.hit(ledger)) for check in CHECKS)
+        return [(check, mask) for check, mask in hits if np.any(mask)]
