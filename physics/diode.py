@@ -225,18 +225,18 @@ def matching_ideality(
     Returns
     -------
     ndarray
-        n between 0.05 and 50, to 1e-6 relative; NaN where no such n exists (a fill factor of 0.25 or less, or one
+        n between 0.05 and 2000, to 1e-6 relative; NaN where no such n exists (a fill factor of 0.25 or less, or one
         that the resistances alone undercut).
 
     Notes
     -----
     The fill factor falls as n rises, so the bracket is narrowed on a grid of 24 idealities a round, all cells at
-    once; the last bracket, 0.06 % wide, is crossed by a straight line.
+    once; the last bracket, 0.09 % wide, is crossed by a straight line.
     """
     args = np.broadcast_arrays(*(np.asarray(a, dtype=float) for a in (ff, voc, jsc, temperature, rs, rsh)))
     ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in args)
     low = np.full(ff_.shape, np.log(0.05))
-    high = np.full(ff_.shape, np.log(50.0))
+    high = np.full(ff_.shape, np.log(2000.0))
     grid = np.linspace(0.0, 1.0, 24)
     plain = not (np.any(rs_ > 0) or np.any(np.isfinite(rsh_)))
     for _ in range(3):

@@ -166,7 +166,7 @@ LINES: tuple[Line, ...] = (
         _SQ,
     ),
     Line(
-        "limit_voltage", "Voltage below the gap, at the limit", "voltage", Family.VOLTAGE, Section.SUN_TO_LIMIT,
+        "limit_voltage", "Voltage of the limit, below the gap", "voltage", Family.VOLTAGE, Section.SUN_TO_LIMIT,
         LIMIT_VOLTAGE,
         (Form("{gap}/q − {voc_limit}", lambda q: q.gap - q.voc_limit, Basis.CALCULATED),),
         _SQ,
@@ -182,13 +182,13 @@ LINES: tuple[Line, ...] = (
         _DIFFERENCE,
     ),
     Line(
-        "voltage_low_current", "Voltage lost to the lower current", "lower current", Family.VOLTAGE,
+        "voltage_low_current", "Voltage, from the lower current", "lower current", Family.VOLTAGE,
         Section.LIMIT_TO_CELL, VOLTAGE,
         (Form("{voc_limit} − {voc_limit_at_jsc}", lambda q: q.voc_limit - q.voc_limit_at_jsc, Basis.MEASURED),),
         _RAU,
     ),
     Line(
-        "voltage_edge", "Voltage lost to a soft absorption edge", "soft edge", Family.VOLTAGE,
+        "voltage_edge", "Voltage, from a soft edge", "soft edge", Family.VOLTAGE,
         Section.LIMIT_TO_CELL, VOLTAGE,
         (Form(
             "{voc_limit_at_jsc} − {voc_rad}", lambda q: q.voc_limit_at_jsc - q.voc_rad,
@@ -218,13 +218,13 @@ LINES: tuple[Line, ...] = (
         _RAU,
     ),
     Line(
-        "fill_voltage", "Fill factor lost to the lower voltage", "lower voltage", Family.FILL,
+        "fill_voltage", "Fill factor, from the lower voltage", "lower voltage", Family.FILL,
         Section.LIMIT_TO_CELL, FILL,
         (Form("{ff_limit} − {ff_voltage}", lambda q: q.ff_limit - q.ff_voltage, Basis.MEASURED),),
         _GREEN,
     ),
     Line(
-        "fill_ideality", "Fill factor lost to the ideality", "ideality", Family.FILL, Section.LIMIT_TO_CELL, FILL,
+        "fill_ideality", "Fill factor, from the ideality", "ideality", Family.FILL, Section.LIMIT_TO_CELL, FILL,
         (Form(
             "{ff_voltage} − {ff_ideality}", lambda q: q.ff_voltage - q.ff_ideality,
             Basis.MEASURED, "", _HAS_N,
@@ -232,21 +232,21 @@ LINES: tuple[Line, ...] = (
         _GREEN,
     ),
     Line(
-        "fill_series", "Fill factor lost to series resistance", "series", Family.FILL, Section.LIMIT_TO_CELL, FILL,
+        "fill_series", "Series resistance", "series", Family.FILL, Section.LIMIT_TO_CELL, FILL,
         _with_or_without_ideality(
             "{ff_without_rs} − {ff_with_rs}", lambda q: q.ff_without_rs - q.ff_with_rs, _HAS_RS
         ),
         _GREEN,
     ),
     Line(
-        "fill_shunt", "Fill factor lost to shunts", "shunt", Family.FILL, Section.LIMIT_TO_CELL, FILL,
+        "fill_shunt", "Shunts", "shunt", Family.FILL, Section.LIMIT_TO_CELL, FILL,
         _with_or_without_ideality(
             "{ff_without_rsh} − {ff_with_rsh}", lambda q: q.ff_without_rsh - q.ff_with_rsh, _HAS_RSH
         ),
         _GREEN,
     ),
     Line(
-        "fill_recombination", "Recombination and shunts, by the pseudo fill factor", "recombination", Family.FILL,
+        "fill_recombination", "Recombination and shunts", "recombination", Family.FILL,
         Section.LIMIT_TO_CELL, FILL,
         (Form(
             "{ff_with_rsh} − {pseudo_ff}", lambda q: q.ff_with_rsh - q.pseudo_ff,
@@ -255,7 +255,7 @@ LINES: tuple[Line, ...] = (
         _DIFFERENCE,
     ),
     Line(
-        "fill_transport", "Transport, beyond the pseudo fill factor", "transport", Family.FILL,
+        "fill_transport", "Transport", "transport", Family.FILL,
         Section.LIMIT_TO_CELL, FILL,
         (Form(
             "{pseudo_ff} − {ff} − ({ff_without_rs} − {ff_with_rs})",

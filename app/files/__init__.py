@@ -1,0 +1,1 @@
+"""Reading and writing of numbers, tables and files. Knows no screen."""

@@ -1,0 +1,207 @@
+"""Numbers and ledger lines as text, for the screen, the charts and the tables. No Qt."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+
+from app.files.numbers import write_number
+from app.session.fields import FIELDS
+from app.session.state import CellEntry, Choices
+from physics.ledger import Entry, Ledger
+from physics.lines import Basis, Form
+from physics.quantities import Quantities, meaning
+
+MINUS = "−"
+THIN = "\u2009"  # between a number and its unit
+
+
+def percent(fraction: float, decimals: int = 2) -> str:
+    """A fraction as a percentage ("26.72 %")."""
+    return f"{write_number(100.0 * fraction, decimals=decimals)}{THIN}%"
+
+
+def signed(value: float, decimals: int) -> str:
+    """A number with its sign, also where it is positive; zero has none."""
+    text = write_number(value, decimals=decimals)
+    zero = not text.strip("0.")
+    return text if zero or text.startswith(MINUS) else f"+{text}"
+
+
+def with_unit(value: float, unit: str, digits: int = 5) -> str:
+    """A number to some significant digits, without trailing zeros, with its unit."""
+    if value != value:
+        return "unknown"
+    if value in (float("inf"), float("-inf")):
+        return "∞" if value > 0 else f"{MINUS}∞"
+    text = write_number(value, digits)
+    head, power, tail = text.partition("×")
+    if "." in head:
+        head = head.rstrip("0").rstrip(".")
+    text = f"{head}{power}{tail}"
+    return f"{text}{THIN}{unit}" if unit else text
+
+
+#: How Δ is shown by its unit in physics: factor, unit on screen, decimals.
+DELTA_SHOWN = {"V": (1e3, "mV", 1), "mA cm⁻²": (1.0, "mA cm⁻²", 2), "": (1e2, "% FF", 2), "mW cm⁻²": (1.0, "mW cm⁻²", 2)}
+
+
+def loss_text(loss: float, incident: float) -> str:
+    """What a line takes off the efficiency, signed: a loss is negative ("−5.22 %")."""
+    return f"{signed(-100.0 * loss / incident, 2)}{THIN}%"
+
+
+def delta_text(entry: Entry) -> str:
+    """How far the cell falls short in the line's own figure, signed as seen from the limit ("−140.2 mV")."""
+    factor, unit, decimals = DELTA_SHOWN[entry.line.factor.unit]
+    return f"{signed(-factor * float(entry.delta), decimals)}{THIN}{unit}"
+
+
+def basis_text(form: Form | None) -> str:
+    """How a line is known ("assumed: step edge")."""
+    if form is None:
+        return ""
+    return f"{form.basis.value}: {form.reason}" if form.reason else form.basis.value
+
+
+_NAME = re.compile(r"\{(\w+)\}")
+
+
+def symbols_in(equation: str) -> str:
+    """An equation with the symbols of its quantities."""
+    return _NAME.sub(lambda match: meaning(match[1]).symbol, equation)
+
+
+def numbers_in(equation: str, q: Quantities) -> str:
+    """An equation with the numbers of one cell and their units."""
+
+    def number(match: re.Match[str]) -> str:
+        return with_unit(float(getattr(q, match[1])), meaning(match[1]).unit)
+
+    return _NAME.sub(number, equation)
+
+
+@dataclass(frozen=True)
+class Given:
+    """A number that enters an equation."""
+
+    symbol: str
+    value: str
+    title: str
+
+
+@dataclass(frozen=True)
+class Explanation:
+    """How one amount of the ledger was found, ready to show.
+
+    Parameters
+    ----------
+    title, amount : str
+        Name of the line and what it takes.
+    steps : tuple of str
+        The calculation: an equation in symbols and the same with its numbers, alternating.
+    given : tuple of Given
+        The numbers that enter.
+    basis, source : str
+        How the line is known, and where the formula comes from.
+    """
+
+    title: str
+    amount: str
+    steps: tuple[str, ...]
+    given: tuple[Given, ...]
+    basis: str
+    source: str
+
+
+_WEIGHTS = {
+    ("log-mean", "weight_current"): "Λ({power_limit}, {power}) / Λ({jsc_limit}, {jsc})",
+    ("log-mean", "weight_voltage"): "Λ({power_limit}, {power}) / Λ({voc_limit}, {voc})",
+    ("log-mean", "weight_fill"): "Λ({power_limit}, {power}) / Λ({ff_limit}, {ff})",
+    ("ladder", "weight_current"): "{voc_limit} · {ff_limit}",
+    ("ladder", "weight_voltage"): "{jsc} · {ff_limit}",
+    ("ladder", "weight_fill"): "{jsc} · {voc}",
+}
+
+
+def explain(ledger: Ledger, key: str) -> Explanation:
+    """How an amount was found.
+
+    Parameters
+    ----------
+    ledger : Ledger
+        Ledger of one cell (shape ()).
+    key : str
+        Key of a line, or "detailed_balance" or "cell" for the totals.
+
+    Raises
+    ------
+    KeyError
+        When there is no such line.
+    """
+    q = ledger.quantities
+    if key == "detailed_balance":
+        return _total(
+            "Detailed-balance limit", ledger, "{jsc_limit} · {voc_limit} · {ff_limit}", "power_limit",
+            Basis.CALCULATED.value, "Shockley and Queisser 1961, doi:10.1063/1.1736034",
+        )
+    if key == "cell":
+        return _total("The cell", ledger, "{jsc} · {voc} · {ff}", "power", Basis.MEASURED.value, "measured figures")
+    entry = ledger[key]
+    form = entry.form_at()
+    if form is None:
+        return Explanation(entry.line.title, "not in this ledger", (), (), "", entry.line.source)
+    unit = entry.line.factor.unit
+    steps = [f"Δ = {symbols_in(form.equation)}", f"= {numbers_in(form.equation, q)} = {with_unit(float(entry.delta), unit)}"]
+    names = _NAME.findall(form.equation)
+    weight = entry.line.factor.weight_equation
+    if weight:
+        steps += [f"loss = {symbols_in(weight)} · Δ", f"= {numbers_in(weight, q)} · Δ = {with_unit(float(entry.loss), 'mW cm⁻²')}"]
+        inner = _WEIGHTS.get((ledger.attribution, weight.strip("{}")))
+        if inner:
+            steps += [f"{symbols_in(weight)} = {symbols_in(inner)}", f"= {numbers_in(inner, q)}"]
+            names += _NAME.findall(inner)
+        else:
+            names += _NAME.findall(weight)
+    return Explanation(
+        entry.line.title,
+        f"{loss_text(float(entry.loss), float(q.incident))} of the incident power",
+        tuple(steps),
+        _given(names, q),
+        basis_text(form),
+        entry.line.source,
+    )
+
+
+def _total(title: str, ledger: Ledger, equation: str, name: str, basis: str, source: str) -> Explanation:
+    q = ledger.quantities
+    power = float(getattr(q, name))
+    steps = (
+        f"{meaning(name).symbol} = {symbols_in(equation)}",
+        f"= {numbers_in(equation, q)} = {with_unit(power, 'mW cm⁻²')}",
+    )
+    amount = f"{percent(power / float(q.incident))} of the incident power"
+    return Explanation(title, amount, steps, _given(_NAME.findall(equation), q), basis, source)
+
+
+def _given(names: list[str], q: Quantities) -> tuple[Given, ...]:
+    once = dict.fromkeys(names)
+    return tuple(
+        Given(meaning(n).symbol, with_unit(float(getattr(q, n)), meaning(n).unit), meaning(n).title) for n in once
+    )
+
+
+def inputs_text(entry: CellEntry) -> str:
+    """The inputs of a cell on one line ("Eg 1.12 eV · Voc 0.738 V · …")."""
+    parts = []
+    for field in FIELDS:
+        value = entry.values.get(field.key)
+        if isinstance(value, float | int):
+            parts.append(f"{field.symbol} {with_unit(float(value), field.unit, 6)}")
+    return " · ".join(parts)
+
+
+def conventions_text(choices: Choices) -> str:
+    """The conventions on one line."""
+    faces = "front face only" if choices.faces == 1 else "both faces"
+    return f"Limit with emission from the {faces}; shares by {choices.attribution}"
