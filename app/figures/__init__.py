@@ -1,0 +1,1 @@
+"""Charts: described once, painted on the screen and into every kind of file."""

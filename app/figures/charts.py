@@ -1,0 +1,195 @@
+"""From a cell's picture to the descriptions of its charts. No Qt, no physics: numbers in, texts and positions out."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+
+from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Step, WaterfallSpec
+from app.session.appraisal import light_named
+from app.session.outcome import Picture
+from app.wording import THIN, conventions_text, delta_text, inputs_text, loss_text, percent, with_unit
+from physics.ledger import Entry, Ledger, entries_of
+from physics.lines import Basis, Family, Section
+
+STALE = "Last valid input: the fields marked in red do not enter"
+_ROLES: dict[Family, Role] = {
+    Family.SPECTRAL: "spectral",
+    Family.VOLTAGE: "voltage",
+    Family.FILL: "fill-factor",
+    Family.NONRADIATIVE: "non-radiative",
+}
+_FAMILY_NAMES: dict[Family, str] = {
+    Family.SPECTRAL: "Spectral",
+    Family.VOLTAGE: "Voltage",
+    Family.NONRADIATIVE: "Non-radiative",
+    Family.FILL: "Fill factor",
+}
+
+
+def nice_step(span: float) -> float:
+    """A round step (1, 2 or 5 times a power of ten) that cuts a span into four to ten pieces."""
+    raw = span / 4.0
+    power = 10.0 ** math.floor(math.log10(raw))
+    return next(power * m for m in (5.0, 2.0, 1.0) if power * m <= raw * (1 + 1e-12))
+
+
+def round_range(low: float, high: float) -> tuple[float, float]:
+    """The smallest range with round ends that holds both numbers."""
+    step = nice_step(max(high - low, 1e-9))
+    return step * math.floor(low / step + 1e-9), step * math.ceil(high / step - 1e-9)
+
+
+def caption_of(picture: Picture) -> tuple[str, ...]:
+    """Small print under every chart of a cell."""
+    entry = picture.entry
+    light = light_named(entry.spectrum).title
+    lines = [f"{inputs_text(entry)} · {light}", conventions_text(picture.choices)]
+    if entry.note:
+        lines.append(entry.note)
+    return tuple(lines)
+
+
+def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
+    """The waterfall of a cell.
+
+    Parameters
+    ----------
+    picture : Picture
+        What was worked out.
+    stale : bool
+        Whether it is of earlier inputs than the present ones.
+    """
+    ledger = picture.ledger
+    incident = float(ledger.limit.incident)
+    limit, cell = float(ledger.limit.efficiency), float(ledger.efficiency)
+    steps = _steps(picture.entry.name, ledger)
+    name = picture.entry.name
+    families = [f for f in _FAMILY_NAMES if any(e.line.family is f for e in ledger.entries)]
+    return WaterfallSpec(
+        title=f"{name}: {percent(cell, 1)} of a possible {percent(limit, 1)}",
+        strip_title=(
+            f"Sunlight: {with_unit(incident, 'mW cm⁻²', 4)}, {light_named(picture.entry.spectrum).title.split(' (')[0]}"
+        ),
+        segments=_segments(ledger, limit),
+        steps_title="From the limit to the cell",
+        steps=steps,
+        axis_label="Share of the incident power (%)",
+        axis_range=_axis(steps),
+        legend=tuple((_ROLES[f], _FAMILY_NAMES[f]) for f in families),
+        caption=caption_of(picture),
+        stale=STALE if stale else "",
+    )
+
+
+def _segments(ledger: Ledger, limit: float) -> tuple[Segment, ...]:
+    incident = float(ledger.limit.incident)
+    pieces = []
+    for entry in entries_of(ledger, Section.SUN_TO_LIMIT):
+        share = float(entry.loss) / incident
+        line = entry.line
+        pieces.append(Segment(line.key, line.title, line.short, 100 * share, percent(share, 1), _ROLES[line.family]))
+    pieces.append(
+        Segment("detailed_balance", "Detailed-balance limit", "limit", 100 * limit, percent(limit, 1), "limit")
+    )
+    return tuple(pieces)
+
+
+def _steps(name: str, ledger: Ledger) -> tuple[Step, ...]:
+    incident = float(ledger.limit.incident)
+    limit, cell = 100 * float(ledger.limit.efficiency), 100 * float(ledger.efficiency)
+    gap = with_unit(float(ledger.limit.gap), "eV", 4)
+    steps = [
+        Step("detailed_balance", f"Limit of a {gap} gap", 0.0, limit, percent(limit / 100), "", "limit", total=True)
+    ]
+    level = limit
+    for entry in entries_of(ledger, Section.LIMIT_TO_CELL):
+        if entry.present:
+            after = level - 100 * float(entry.loss) / incident
+            steps.append(_step(entry, level, after, incident))
+            level = after
+    steps.append(Step("cell", name, 0.0, cell, percent(cell / 100), "", "cell", total=True))
+    return tuple(steps)
+
+
+def _step(entry: Entry, start: float, end: float, incident: float) -> Step:
+    form = entry.form_at()
+    assumed = form is not None and form.basis is Basis.ASSUMED
+    return Step(
+        key=entry.line.key,
+        label=entry.line.title,
+        start=start,
+        end=end,
+        value_text=loss_text(float(entry.loss), incident),
+        detail_text=delta_text(entry),
+        role=_ROLES[entry.line.family],
+        assumed=assumed,
+    )
+
+
+def _axis(steps: tuple[Step, ...]) -> tuple[float, float]:
+    """From zero, or from a round number where the losses would be too small to see."""
+    ends = [level for s in steps if not s.total for level in (s.start, s.end)] + [s.end for s in steps if s.total]
+    low, high = min(ends), max(ends)
+    span = max(high - low, 1.0)
+    floor = low - 0.4 * span
+    return round_range(floor if floor > 0.12 * high else 0.0, high + 0.02 * span)
+
+
+def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
+    """Current density against voltage: the cell and its limit."""
+    ledger, cell_curve = picture.ledger, picture.cell_curve
+    limit = ledger.limit
+    drawn = not math.isnan(cell_curve.ideality)
+    series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
+    marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
+    caption = caption_of(picture)
+    if drawn:
+        series.append(Series("cell", picture.entry.name, cell_curve.voltage, cell_curve.current, "cell"))
+        marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
+        note = (
+            f"Cell: one-diode curve drawn through Voc, Jsc and FF (n = {cell_curve.ideality:.3g}), not a measured sweep"
+        )
+    else:
+        marks.append(Mark("voc", "Voc", float(ledger.cell.voc), 0.0, "cell"))
+        marks.append(Mark("jsc", "Jsc", 0.0, float(ledger.cell.jsc), "cell"))
+        note = "Cell: no diode curve has so low a fill factor, so only Voc and Jsc are shown"
+    return PlotSpec(
+        title=f"{picture.entry.name}: current density against voltage",
+        x_label="Voltage (V)",
+        y_label="Current density (mA cm⁻²)",
+        x_range=round_range(0.0, 1.02 * max(float(limit.voc), float(ledger.cell.voc))),
+        y_range=round_range(0.0, 1.04 * max(float(limit.jsc), float(ledger.cell.jsc))),
+        series=tuple(series),
+        marks=tuple(marks),
+        caption=(note, *caption),
+        stale=STALE if stale else "",
+    )
+
+
+def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency: float) -> Mark:
+    """The mark at the maximum power point of a drawn curve (nearest drawn point: a place, not a figure)."""
+    at = int(np.argmax(voltage * current))
+    return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role)
+
+
+def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
+    """Efficiency of the limit against the gap, with the cell and its limit as marks."""
+    gaps, ledger = picture.gap_curve, picture.ledger
+    gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
+    curve = 100.0 * gaps.efficiency
+    return PlotSpec(
+        title=f"{picture.entry.name}: efficiency against the gap",
+        x_label="Gap (eV)",
+        y_label="Efficiency (%)",
+        x_range=(0.4, 3.0) if 0.4 <= gap <= 3.0 else round_range(min(gap, 0.4), max(gap, 3.0)),
+        y_range=round_range(0.0, 1.04 * float(np.max(curve))),
+        series=(Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"),),
+        marks=(
+            Mark("limit", f"limit{THIN}{percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", filled=False),
+            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell"),
+        ),
+        caption=caption_of(picture),
+        stale=STALE if stale else "",
+    )
