@@ -1,0 +1,1 @@
+"""The program around the science: session, files, charts, window and headless command."""

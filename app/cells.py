@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 
 from app.files.numbers import NumberError
+from app.files.table_error import TableError
+from app.files.table_output import write_table
+from app.files.tables import Table
 from app.session.fields import FIELDS
 from app.session.state import CellEntry, Unread, Value
 
@@ -57,3 +60,57 @@ def read_row(cells: Mapping[str, str], decimal_comma: bool = False) -> ReadRow:
 def entry_of(row: ReadRow, note: str = "") -> CellEntry:
     """A shelf entry of a row; its identity is given when it is put on the shelf."""
     return CellEntry(0, row.name, row.group, row.spectrum, row.values, note)
+
+
+def entries_from(table: Table) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
+    """Shelf entries of a table of cells.
+
+    Parameters
+    ----------
+    table : Table
+        As read from a file. A column "note" (or "story") becomes the note.
+
+    Returns
+    -------
+    entries : tuple of CellEntry
+        One for each row with a name. Numbers that could not be read stay as typed, to be mended in the window.
+    left_out : tuple of str
+        One sentence for each row that could not be taken.
+
+    Raises
+    ------
+    TableError
+        When the table has no column "name", or none of the columns of a cell.
+    """
+    known = [field.column for field in FIELDS if field.column in table.columns]
+    if "name" not in table.columns or not known:
+        raise TableError(
+            "This is no table of cells: it needs a column name and columns such as gap_eV, voc_V, jsc_mA_cm2 and "
+            f"ff_pct; it has {', '.join(table.columns[:8])}."
+        )
+    entries, left_out = [], []
+    for index, (row, line) in enumerate(zip(table.rows, table.line_numbers, strict=True)):
+        fault = table.row_problems.get(index, "")
+        cells = dict(zip(table.columns, row, strict=True))
+        read = read_row(cells, table.decimal_comma)
+        if not fault and not read.name:
+            fault = "the name is missing."
+        if fault:
+            left_out.append(f"Line {line}: {fault}")
+        else:
+            entries.append(entry_of(read, (cells.get("note") or cells.get("story") or "").strip()))
+    return tuple(entries), tuple(left_out)
+
+
+def cell_table(cells: Sequence[CellEntry]) -> str:
+    """The cells of a shelf as a table that `entries_from` and the headless command read back."""
+    columns = ("name", "group", *(field.column for field in FIELDS), "spectrum", "note")
+    rows = [
+        (cell.name, cell.group, *(_written(cell.values[field.key]) for field in FIELDS), cell.spectrum, cell.note)
+        for cell in cells
+    ]
+    return write_table(columns, rows)
+
+
+def _written(value: Value) -> str | float | None:
+    return value.text if isinstance(value, Unread) else value

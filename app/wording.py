@@ -6,6 +6,7 @@ import re
 from dataclasses import dataclass
 
 from app.files.numbers import write_number
+from app.session.appraisal import light_named
 from app.session.fields import FIELDS
 from app.session.state import CellEntry, Choices
 from physics.ledger import Entry, Ledger
@@ -43,7 +44,12 @@ def with_unit(value: float, unit: str, digits: int = 5) -> str:
 
 
 #: How Δ is shown by its unit in physics: factor, unit on screen, decimals.
-DELTA_SHOWN = {"V": (1e3, "mV", 1), "mA cm⁻²": (1.0, "mA cm⁻²", 2), "": (1e2, "% FF", 2), "mW cm⁻²": (1.0, "mW cm⁻²", 2)}
+DELTA_SHOWN = {
+    "V": (1e3, "mV", 1),
+    "mA cm⁻²": (1.0, "mA cm⁻²", 2),
+    "": (1e2, "% FF", 2),
+    "mW cm⁻²": (1.0, "mW cm⁻²", 2),
+}
 
 
 def loss_text(loss: float, incident: float) -> str:
@@ -124,7 +130,7 @@ _WEIGHTS = {
 }
 
 
-def explain(ledger: Ledger, key: str) -> Explanation:
+def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
     """How an amount was found.
 
     Parameters
@@ -132,7 +138,10 @@ def explain(ledger: Ledger, key: str) -> Explanation:
     ledger : Ledger
         Ledger of one cell (shape ()).
     key : str
-        Key of a line, or "detailed_balance" or "cell" for the totals.
+        Key of a line, or "sunlight", "detailed_balance" or "cell" for the totals.
+
+    spectrum : str
+        Short name of the light.
 
     Raises
     ------
@@ -145,6 +154,10 @@ def explain(ledger: Ledger, key: str) -> Explanation:
             "Detailed-balance limit", ledger, "{jsc_limit} · {voc_limit} · {ff_limit}", "power_limit",
             Basis.CALCULATED.value, "Shockley and Queisser 1961, doi:10.1063/1.1736034",
         )
+    if key == "sunlight":
+        title = light_named(spectrum).title if spectrum else "the light"
+        given = (Given(meaning("incident").symbol, with_unit(float(q.incident), "mW cm⁻²"), meaning("incident").title),)
+        return Explanation("Sunlight", f"{title}, taken as 100 %", (), given, "", "the irradiance of the measurement")
     if key == "cell":
         return _total("The cell", ledger, "{jsc} · {voc} · {ff}", "power", Basis.MEASURED.value, "measured figures")
     entry = ledger[key]
@@ -152,11 +165,12 @@ def explain(ledger: Ledger, key: str) -> Explanation:
     if form is None:
         return Explanation(entry.line.title, "not in this ledger", (), (), "", entry.line.source)
     unit = entry.line.factor.unit
-    steps = [f"Δ = {symbols_in(form.equation)}", f"= {numbers_in(form.equation, q)} = {with_unit(float(entry.delta), unit)}"]
+    delta, loss = with_unit(float(entry.delta), unit), with_unit(float(entry.loss), "mW cm⁻²")
+    steps = [f"Δ = {symbols_in(form.equation)}", f"= {numbers_in(form.equation, q)} = {delta}"]
     names = _NAME.findall(form.equation)
     weight = entry.line.factor.weight_equation
     if weight:
-        steps += [f"loss = {symbols_in(weight)} · Δ", f"= {numbers_in(weight, q)} · Δ = {with_unit(float(entry.loss), 'mW cm⁻²')}"]
+        steps += [f"loss = {symbols_in(weight)} · Δ", f"= {numbers_in(weight, q)} · Δ = {loss}"]
         inner = _WEIGHTS.get((ledger.attribution, weight.strip("{}")))
         if inner:
             steps += [f"{symbols_in(weight)} = {symbols_in(inner)}", f"= {numbers_in(inner, q)}"]

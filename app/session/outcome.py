@@ -114,28 +114,26 @@ def picture_of(appraisal: Appraisal, choices: Choices) -> Picture | None:
 
 
 class Outcomes:
-    """Works out the outcome of a session and remembers the last good picture of each cell."""
+    """Works out the outcome of the cells of a session and remembers the last good picture of each."""
 
     def __init__(self, session: Session) -> None:
         self._session = session
-        self._pictures: dict[int, Picture] = {}
-        self._latest: tuple[CellEntry | None, Choices | None, Outcome] | None = None
+        self._known: dict[int, tuple[CellEntry, Choices, Outcome]] = {}
 
     def current(self) -> Outcome:
         """The outcome for the cell on show."""
-        state = self._session.state
-        entry, choices = state.cell, state.choices
-        if self._latest is not None and self._latest[0] is entry and self._latest[1] is choices:
-            return self._latest[2]
-        outcome = self._of(entry, choices)
-        self._latest = (entry, choices, outcome)
-        return outcome
+        entry = self._session.state.cell
+        return Outcome(None, None, False) if entry is None else self.of(entry)
 
-    def _of(self, entry: CellEntry | None, choices: Choices) -> Outcome:
-        if entry is None:
-            return Outcome(None, None, False)
+    def of(self, entry: CellEntry) -> Outcome:
+        """The outcome for a cell of the session; worked out again only where it or the conventions changed."""
+        choices = self._session.state.choices
+        known = self._known.get(entry.ident)
+        if known is not None and known[0] is entry and known[1] is choices:
+            return known[2]
         appraisal = appraise(entry, choices)
         fresh = picture_of(appraisal, choices)
-        if fresh is not None:
-            self._pictures[entry.ident] = fresh
-        return Outcome(appraisal, self._pictures.get(entry.ident), fresh is None)
+        earlier = known[2].picture if known is not None else None
+        outcome = Outcome(appraisal, fresh or earlier, fresh is None)
+        self._known[entry.ident] = (entry, choices, outcome)
+        return outcome

@@ -74,6 +74,13 @@ class Session:
         """Show how another line was found."""
         self._become(replace(self._state, line=key))
 
+    def start_here(self) -> None:
+        """Forget the steps so far: what was opened at the start is nothing to undo, and the first cell is on show."""
+        self._done.clear()
+        self._undone.clear()
+        if self._state.cells:
+            self.pick(self._state.cells[0].ident)
+
     @property
     def undo_name(self) -> str:
         """Name of what `undo` would take back, or an empty text."""

@@ -1,0 +1,1 @@
+"""The window: inputs, live plots, ledger table, actions. The only place with widgets."""

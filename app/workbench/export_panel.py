@@ -1,0 +1,198 @@
+"""Pictures for slides and papers: choose chart and size, see it, save or copy it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from pathlib import Path
+
+from PySide6.QtCore import QMimeData, QSize, Qt, Signal
+from PySide6.QtGui import QGuiApplication, QImage, QPixmap
+from PySide6.QtWidgets import (
+    QComboBox,
+    QDialog,
+    QFileDialog,
+    QFormLayout,
+    QHBoxLayout,
+    QLabel,
+    QLineEdit,
+    QPushButton,
+    QVBoxLayout,
+    QWidget,
+)
+
+from app.figures.charts import gap_plot_of, jv_plot_of, waterfall_of
+from app.figures.errors import FigureError
+from app.figures.export import Background, Kind, image, render
+from app.figures.presets import PRESETS
+from app.figures.spec import PlotSpec, WaterfallSpec
+from app.files.write_error import WriteError
+from app.files.writer import write_file
+from app.session.outcome import Outcomes, Picture
+
+Spec = WaterfallSpec | PlotSpec
+CHARTS: dict[str, tuple[str, Callable[[Picture, bool], Spec]]] = {
+    "waterfall": ("Waterfall", waterfall_of),
+    "jv": ("Current density against voltage", jv_plot_of),
+    "gap": ("Efficiency against the gap", gap_plot_of),
+}
+_BACKGROUNDS: tuple[tuple[str, Background], ...] = (("White", "white"), ("Transparent", "transparent"))
+_KINDS: tuple[tuple[str, Kind], ...] = (("PNG picture", "png"), ("SVG drawing", "svg"), ("PDF page", "pdf"))
+
+
+def chart_of(picture: Picture, chart: str, title: str = "") -> Spec:
+    """The description of one chart of a cell, under its own title or another."""
+    spec = CHARTS[chart][1](picture, False)
+    return replace(spec, title=title) if title.strip() else spec
+
+
+def copy_image(picture: QImage) -> None:
+    """Put a picture on the clipboard."""
+    data = QMimeData()
+    data.setImageData(picture)
+    QGuiApplication.clipboard().setMimeData(data)
+
+
+def file_stem(name: str, chart: str) -> str:
+    """A file name that every system takes, from the name of a cell."""
+    plain = "".join(c if c.isalnum() or c in "-_ " else "-" for c in name).strip() or "cell"
+    return f"{plain[:80]} {chart}"
+
+
+class ExportPanel(QDialog):
+    """A window of its own beside the main one; it follows the cell on show.
+
+    Signals
+    -------
+    told : str
+        One sentence about what was done, or why it could not be.
+    """
+
+    told = Signal(str)
+
+    def __init__(self, outcomes: Outcomes, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._outcomes = outcomes
+        self._folder = Path.home()
+        self.setWindowTitle("Export a picture")
+        self.setModal(False)
+        self.chart = self._choice((title, key) for key, (title, _) in CHARTS.items())
+        self.preset = self._choice((p.title, p.key) for p in PRESETS.values())
+        self.background = self._choice(_BACKGROUNDS)
+        self.kind = self._choice(_KINDS)
+        self.title = QLineEdit()
+        self.title.setPlaceholderText("as the chart says")
+        self.title.textEdited.connect(self.refresh)
+        self.preview = QLabel()
+        self.preview.setAlignment(Qt.AlignmentFlag.AlignCenter)
+        self.preview.setMinimumSize(480, 290)
+        self.preview.setObjectName("preview")
+        self.message = QLabel()
+        self.message.setWordWrap(True)
+        self.copy_button = QPushButton("Copy picture")
+        self.save_button = QPushButton("Save…")
+        self.save_button.setDefault(True)
+        self.copy_button.clicked.connect(self.copy)
+        self.save_button.clicked.connect(self._ask_and_save)
+        self._lay_out()
+
+    def _choice(self, options: object) -> QComboBox:
+        box = QComboBox()
+        for title, key in options:  # type: ignore[attr-defined]
+            box.addItem(title, key)
+        box.currentIndexChanged.connect(self.refresh)
+        return box
+
+    def _lay_out(self) -> None:
+        form = QFormLayout()
+        for text, widget in (
+            ("&Chart", self.chart),
+            ("&Size", self.preset),
+            ("&Ground", self.background),
+            ("&Kind of file", self.kind),
+            ("&Title", self.title),
+        ):
+            form.addRow(text, widget)
+        buttons = QHBoxLayout()
+        buttons.addWidget(self.message, 1)
+        buttons.addWidget(self.copy_button)
+        buttons.addWidget(self.save_button)
+        column = QVBoxLayout(self)
+        column.addLayout(form)
+        column.addWidget(self.preview, 1)
+        column.addLayout(buttons)
+
+    def _spec(self) -> Spec | None:
+        outcome = self._outcomes.current()
+        if outcome.picture is None or outcome.stale:
+            return None
+        return chart_of(outcome.picture, self.chart.currentData(), self.title.text())
+
+    def refresh(self) -> None:
+        """Draw the preview anew."""
+        spec = self._spec()
+        for button in (self.copy_button, self.save_button):
+            button.setEnabled(spec is not None)
+        if spec is None:
+            self.preview.setPixmap(QPixmap())
+            self.preview.setText("")
+            self.message.setText("There is no picture of the present inputs: mend the fields marked in red first.")
+            return
+        self.message.clear()
+        picture = image(spec, PRESETS[self.preset.currentData()], background=self.background.currentData())
+        room: QSize = self.preview.size() * self.devicePixelRatioF()
+        small = QPixmap.fromImage(
+            picture.scaled(room, Qt.AspectRatioMode.KeepAspectRatio, Qt.TransformationMode.SmoothTransformation)
+        )
+        small.setDevicePixelRatio(self.devicePixelRatioF())
+        self.preview.setPixmap(small)
+
+    def copy(self) -> None:
+        """Put the picture on the clipboard."""
+        spec = self._spec()
+        if spec is not None:
+            copy_image(image(spec, PRESETS[self.preset.currentData()], background=self.background.currentData()))
+            self._tell("The picture is on the clipboard.")
+
+    def _ask_and_save(self) -> None:
+        outcome = self._outcomes.current()
+        if outcome.picture is None:
+            return
+        kind: str = self.kind.currentData()
+        stem = file_stem(outcome.picture.entry.name, self.chart.currentData())
+        name, _ = QFileDialog.getSaveFileName(
+            self, "Save picture", str(self._folder / f"{stem}.{kind}"), f"{self.kind.currentText()} (*.{kind})"
+        )
+        if name:
+            self.save(Path(name))
+
+    def save(self, path: Path) -> None:
+        """Write the picture to a file and tell how it went."""
+        spec = self._spec()
+        if spec is None:
+            return
+        kind: Kind = self.kind.currentData()
+        path = path if path.suffix else path.with_name(f"{path.name}.{kind}")
+        try:
+            background: Background = self.background.currentData()
+            write_file(path, render(spec, PRESETS[self.preset.currentData()], background=background, kind=kind))
+        except (WriteError, FigureError) as fault:
+            self._tell(str(fault))
+            return
+        self._folder = path.parent
+        self._tell(f"Saved as {path}.")
+
+    def _tell(self, sentence: str) -> None:
+        self.message.setText(sentence)
+        self.told.emit(sentence)
+
+    def showEvent(self, event: object) -> None:
+        """Draw the preview when the panel comes up."""
+        super().showEvent(event)  # type: ignore[arg-type]
+        self.refresh()
+
+    def resizeEvent(self, event: object) -> None:
+        """Fit the preview to the new size."""
+        super().resizeEvent(event)  # type: ignore[arg-type]
+        if self.isVisible():
+            self.refresh()

@@ -1,0 +1,108 @@
+"""The ledger as a table: the same amounts as the waterfall, to read and to copy."""
+
+from __future__ import annotations
+
+from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt, Signal
+from PySide6.QtGui import QFont
+from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidget
+
+from app.ledger_rows import COLUMNS, LedgerRow
+from app.workbench.theme import Theme
+
+Index = QModelIndex | QPersistentModelIndex
+_TITLES = {"line": "Line", "amount": "% of light", "change": "Change", "basis": "Basis"}
+
+
+class LedgerModel(QAbstractTableModel):
+    """Rows of a ledger; changed in place while the lines stay the same, so that a repaint is all it costs."""
+
+    def __init__(self, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self.rows: tuple[LedgerRow, ...] = ()
+        self._bold = QFont()
+        self._bold.setBold(True)
+
+    def show_rows(self, rows: tuple[LedgerRow, ...]) -> None:
+        """Show these rows."""
+        if [r.key for r in rows] != [r.key for r in self.rows]:
+            self.beginResetModel()
+            self.rows = rows
+            self.endResetModel()
+        elif rows != self.rows:
+            self.rows = rows
+            self.dataChanged.emit(self.index(0, 0), self.index(len(rows) - 1, len(COLUMNS) - 1))
+
+    def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008 (Qt's own signature)
+        """Number of lines and totals."""
+        return 0 if parent.isValid() else len(self.rows)
+
+    def columnCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008
+        """Number of columns."""
+        return 0 if parent.isValid() else len(COLUMNS)
+
+    def data(self, index: Index, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        """Text, alignment and weight of a cell."""
+        row, column = self.rows[index.row()], COLUMNS[index.column()]
+        if role == Qt.ItemDataRole.DisplayRole:
+            return row.text(column)
+        if role == Qt.ItemDataRole.ToolTipRole:
+            return f"{row.line}\n{row.basis}"
+        if role == Qt.ItemDataRole.TextAlignmentRole and column in ("amount", "change"):
+            return int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+        if role == Qt.ItemDataRole.FontRole and row.total:
+            return self._bold
+        return None
+
+    def headerData(self, section: int, orientation: Qt.Orientation, role: int = Qt.ItemDataRole.DisplayRole) -> object:
+        """Name of a column."""
+        if orientation == Qt.Orientation.Horizontal and role == Qt.ItemDataRole.DisplayRole:
+            return _TITLES[COLUMNS[section]]
+        return None
+
+
+class LedgerTable(QTableView):
+    """Shows the ledger and lets the user pick a line.
+
+    Signals
+    -------
+    line_picked : str
+        Key of the line.
+    """
+
+    line_picked = Signal(str)
+
+    def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._model = LedgerModel(self)
+        self.setModel(self._model)
+        self.setAccessibleName("Ledger: every line with its amount and basis")
+        self.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
+        self.setSelectionMode(QAbstractItemView.SelectionMode.SingleSelection)
+        self.setEditTriggers(QAbstractItemView.EditTrigger.NoEditTriggers)
+        self.setShowGrid(False)
+        self.setWordWrap(False)
+        self.setTabKeyNavigation(False)
+        self.verticalHeader().hide()
+        self.verticalHeader().setDefaultSectionSize(self.fontMetrics().height() + 5)
+        header = self.horizontalHeader()
+        header.setHighlightSections(False)
+        header.setSectionResizeMode(QHeaderView.ResizeMode.Fixed)
+        header.setSectionResizeMode(0, QHeaderView.ResizeMode.Stretch)
+        digit = self.fontMetrics().horizontalAdvance("0")
+        for column, digits in ((1, 10), (2, 15), (3, 11)):
+            self.setColumnWidth(column, digits * digit)
+        self.clicked.connect(lambda index: self.line_picked.emit(self._model.rows[index.row()].key))
+        self.selectionModel().currentRowChanged.connect(self._moved)
+        theme.changed.connect(self.viewport().update)
+
+    def _moved(self, current: QModelIndex, previous: QModelIndex) -> None:
+        if current.isValid() and self.hasFocus():
+            self.line_picked.emit(self._model.rows[current.row()].key)
+
+    def show_rows(self, rows: tuple[LedgerRow, ...], line: str) -> None:
+        """Show these rows with one line picked."""
+        self._model.show_rows(rows)
+        at = next((k for k, row in enumerate(rows) if row.key == line), -1)
+        if at != self.currentIndex().row():
+            self.setCurrentIndex(self._model.index(at, 0) if at >= 0 else QModelIndex())
+

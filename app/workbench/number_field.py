@@ -1,0 +1,201 @@
+"""One input of a cell: its symbol, what was typed, its unit, a slider, and what is wrong with it."""
+
+from __future__ import annotations
+
+import math
+
+from PySide6.QtCore import QEvent, QObject, Qt, Signal
+from PySide6.QtGui import QFocusEvent, QWheelEvent
+from PySide6.QtWidgets import QGridLayout, QLabel, QLineEdit, QSizePolicy, QSlider, QWidget
+
+from app.files.numbers import NumberError, write_number
+from app.session.appraisal import Problem
+from app.session.fields import Field
+from app.session.state import Unread, Value
+from physics.checks import Severity
+
+_SLIDER_STEPS = 1000
+
+
+def slider_value(field: Field, position: int) -> float:
+    """Value [field's unit] of a slider position (0 to 1000), rounded to what the field shows."""
+    low, high = field.slider
+    share = position / _SLIDER_STEPS
+    if field.log:
+        value = low * (high / low) ** share
+        return float(f"{value:.{field.digits}g}")
+    return round(low + (high - low) * share, field.digits)
+
+
+def slider_position(field: Field, value: float) -> int:
+    """Slider position (0 to 1000) of a value [field's unit]; values beyond the slider stand at its end."""
+    low, high = field.slider
+    if field.log:
+        share = math.log(value / low) / math.log(high / low) if value > 0 else 0.0
+    else:
+        share = (value - low) / (high - low)
+    return round(_SLIDER_STEPS * min(max(share, 0.0), 1.0))
+
+
+class CalmSlider(QSlider):
+    """A slider that leaves the wheel to the scroll area around it unless it has the focus."""
+
+    def wheelEvent(self, event: QWheelEvent) -> None:
+        """Turn only where the user is at work."""
+        if self.hasFocus():
+            super().wheelEvent(event)
+        else:
+            event.ignore()
+
+
+class Entry(QLineEdit):
+    """The text of a field. The wheel does nothing in it; leaving it is told."""
+
+    left = Signal()
+
+    def wheelEvent(self, event: QWheelEvent) -> None:
+        """Scroll what is around the field, never its number."""
+        event.ignore()
+
+    def focusOutEvent(self, event: QFocusEvent) -> None:
+        """Tell that the visit to the field is over."""
+        super().focusOutEvent(event)
+        self.left.emit()
+
+
+class NumberField(QObject):
+    """Binds one field of a cell to a row of widgets. It holds no value of its own: it shows one and asks for another.
+
+    Signals
+    -------
+    asked : object
+        The user wants the field to be this `Value`.
+    settled
+        A drag or a visit to the field is over.
+    """
+
+    asked = Signal(object)
+    settled = Signal()
+
+    def __init__(self, field: Field, grid: QGridLayout, row: int, parent: QWidget) -> None:
+        super().__init__(parent)
+        self.field = field
+        self._shown: Value = None
+        self._problem: Problem | None = None
+        self.label = QLabel(field.symbol, parent)
+        self.entry = Entry(parent)
+        self.unit = QLabel(field.unit, parent)
+        self.slider = CalmSlider(Qt.Orientation.Horizontal, parent)
+        self.message = QLabel(parent)
+        self._prepare()
+        for column, widget in enumerate((self.label, self.entry, self.unit, self.slider)):
+            grid.addWidget(widget, row, column)
+        grid.addWidget(self.message, row + 1, 0, 1, 4)
+
+    def _prepare(self) -> None:
+        field = self.field
+        optional = "" if field.required else " Leave it empty if it is not known."
+        if field.default is not None:
+            optional = f" Empty means {write_number(field.default)} {field.unit}."
+        tip = f"{field.title}{f' in {field.unit}' if field.unit else ''}.{optional}"
+        name = f"{field.title}{f' in {field.unit}' if field.unit else ''}"
+        self.label.setBuddy(self.entry)
+        self.label.setToolTip(tip)
+        self.entry.setToolTip(tip)
+        self.entry.setAccessibleName(name)
+        self.entry.setPlaceholderText("" if field.required else "unknown" if field.default is None else "")
+        self.entry.setFixedWidth(self.entry.fontMetrics().horizontalAdvance("0") * 10 + 12)
+        self.entry.textEdited.connect(self._typed)
+        self.entry.left.connect(self._left)
+        self.entry.returnPressed.connect(self._left)
+        self.slider.setRange(0, _SLIDER_STEPS)
+        self.slider.setPageStep(_SLIDER_STEPS // 20)
+        self.slider.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+        self.slider.setAccessibleName(f"{name}, slider")
+        self.slider.setToolTip(tip)
+        self.slider.setMinimumWidth(70)
+        self.slider.actionTriggered.connect(self._slid)
+        self.slider.sliderReleased.connect(self.settled)
+        self.message.setWordWrap(True)
+        self.message.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
+        self.message.hide()
+
+    def show_value(self, value: Value) -> None:
+        """Show a value. What the user is typing stays as typed as long as it means that value."""
+        if value != self._shown or not self._means(value):
+            self._shown = value
+            if not self._means(value):
+                self.entry.setText(self._text(value))
+        if not self.slider.isSliderDown():
+            position = slider_position(self.field, value) if isinstance(value, float | int) else 0
+            if position != self.slider.value():
+                self.slider.setValue(position)
+
+    def show_problem(self, problem: Problem | None) -> None:
+        """Tell what is wrong beside the field."""
+        if problem == self._problem:
+            return
+        self._problem = problem
+        self.message.setVisible(problem is not None)
+        if problem is None:
+            self.message.clear()
+        else:
+            refused = problem.severity is Severity.IMPOSSIBLE
+            self.message.setText(f"{'✕' if refused else '▲'} {problem.message}")
+            self._mark(self.message, "refused" if refused else "doubtful")
+        self._mark(self.entry, "" if problem is None else self.message.property("trouble"))
+
+    @staticmethod
+    def _mark(widget: QWidget, trouble: str) -> None:
+        """Set the property that the style sheet colours by."""
+        if widget.property("trouble") != trouble:
+            widget.setProperty("trouble", trouble)
+            widget.style().unpolish(widget)
+            widget.style().polish(widget)
+
+    @staticmethod
+    def _text(value: Value) -> str:
+        if value is None:
+            return ""
+        return value.text if isinstance(value, Unread) else write_number(value)
+
+    def _read(self) -> Value:
+        text = self.entry.text()
+        if not text.strip():
+            return None
+        try:
+            return self.field.read(text)
+        except NumberError as fault:
+            return Unread(text, str(fault))
+
+    def _means(self, value: Value) -> bool:
+        return self._read() == value
+
+    def _typed(self) -> None:
+        self.asked.emit(self._read())
+
+    def _left(self) -> None:
+        """The visit is over: an empty field with a default takes it, and the number is written out plainly."""
+        value = self._read()
+        if value is None and self.field.default is not None:
+            self.asked.emit(self.field.default)
+        elif isinstance(value, float):
+            self.entry.setText(self._text(value))
+        self.settled.emit()
+
+    def _slid(self) -> None:
+        self.asked.emit(slider_value(self.field, self.slider.sliderPosition()))
+
+
+def ignore_wheel(widget: QWidget) -> None:
+    """Keep the wheel from changing a widget that does not have the focus."""
+    widget.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
+    widget.installEventFilter(_WheelGuard(widget))
+
+
+class _WheelGuard(QObject):
+    def eventFilter(self, watched: QObject, event: QEvent) -> bool:
+        if event.type() == QEvent.Type.Wheel and isinstance(watched, QWidget) and not watched.hasFocus():
+            event.ignore()
+            return True
+        return super().eventFilter(watched, event)

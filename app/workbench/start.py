@@ -1,0 +1,74 @@
+"""Starting the window."""
+
+from __future__ import annotations
+
+import sys
+import traceback
+from collections.abc import Sequence
+from importlib.resources import as_file, files
+from pathlib import Path
+from types import TracebackType
+
+from PySide6.QtWidgets import QApplication
+
+from app.session.commands import AddCells
+from app.session.session import Session
+from app.session.state import CellEntry, State
+from app.workbench.window import Window
+
+
+def demo_path() -> Path:
+    """The table of the invented demo cells."""
+    with as_file(files("resources") / "demo_cells.csv") as path:
+        return Path(path)
+
+
+def first_state(empty: bool) -> State:
+    """The state to start with: one empty cell, or an empty shelf that is about to be filled."""
+    return State() if empty else AddCells((CellEntry(0, "Cell 1"),)).apply(State())
+
+
+def application(arguments: Sequence[str]) -> QApplication:
+    """The Qt application, made once."""
+    existing = QApplication.instance()
+    if isinstance(existing, QApplication):
+        return existing
+    app = QApplication(["gapledger", *arguments])
+    app.setApplicationName("Gapledger")
+    app.setStyle("Fusion")
+    return app
+
+
+def make_window(arguments: Sequence[str]) -> Window:
+    """A window on the demo cells (argument "demo"), on tables of cells, or on an empty cell."""
+    session = Session(first_state(empty=bool(arguments)))
+    window = Window(session)
+    for argument in arguments:
+        window.actions_.open_table(demo_path() if argument == "demo" else Path(argument))
+    if arguments:
+        session.start_here()
+    window.refresh()
+    return window
+
+
+def open_window(arguments: Sequence[str]) -> int:
+    """Open the window and work until it is closed; the exit status."""
+    sys.setswitchinterval(0.0005)  # a worker in small numpy calls would else starve the screen for as long as it runs
+    app = application(arguments)
+    window = make_window(arguments)
+    sys.excepthook = lambda kind, fault, trace: _tell(window, kind, fault, trace)
+    window.show()
+    return app.exec()
+
+
+def _tell(window: Window, kind: type[BaseException], fault: BaseException, trace: TracebackType | None) -> None:
+    """The one place where an unforeseen fault ends up: it is told, and the program goes on."""
+    print("".join(traceback.format_exception(kind, fault, trace)), file=sys.stderr)
+    if issubclass(kind, KeyboardInterrupt):
+        QApplication.quit()
+        return
+    window.notices.say(
+        f"Something went wrong inside the program ({kind.__name__}: {fault}). Your cells are still here; what you did "
+        "last may not have worked.",
+        lasting=True,
+    )

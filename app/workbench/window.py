@@ -1,0 +1,157 @@
+"""The main window: the shelf and inputs, the waterfall with the plots behind it, the ledger and how it came about."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from PySide6.QtCore import Qt, QTimer
+from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
+from PySide6.QtWidgets import QMainWindow, QSplitter, QVBoxLayout, QWidget
+
+from app.figures.charts import gap_plot_of, jv_plot_of, waterfall_of
+from app.ledger_rows import ledger_rows
+from app.session.commands import RemoveCell
+from app.session.outcome import Outcome, Outcomes
+from app.session.session import Session
+from app.wording import explain
+from app.workbench.actions import Actions
+from app.workbench.explain_panel import ExplainPanel
+from app.workbench.inputs_panel import InputsPanel
+from app.workbench.ledger_table import LedgerTable
+from app.workbench.notice_bar import NoticeBar
+from app.workbench.plot_view import PlotView
+from app.workbench.shelf import Shelf
+from app.workbench.theme import Theme, heading
+from app.workbench.waterfall_view import WaterfallView
+
+_EMPTY_SHELF = "The shelf is empty. Press Ctrl+N for a new cell, or open a table of cells with Ctrl+O."
+_EMPTY_CELL = (
+    "Type the gap, Voc, Jsc and FF of the cell on the left.\nThe way of every watt from the sunlight to the cell "
+    "appears here as soon as the four are there."
+)
+
+
+class Window(QMainWindow):
+    """Binds the session to the views. It holds nothing itself: every change goes to the session, and comes back."""
+
+    def __init__(self, session: Session) -> None:
+        super().__init__()
+        self.session = session
+        self.outcomes = Outcomes(session)
+        self.theme = Theme(self)
+        self.shelf = Shelf(self.outcomes)
+        self.inputs = InputsPanel(session, self.theme)
+        self.waterfall = WaterfallView(self.theme)
+        self.jv_plot = PlotView("Current density against voltage", self.theme)
+        self.gap_plot = PlotView("Efficiency against the gap", self.theme)
+        self.table = LedgerTable(self.theme)
+        self.explanation = ExplainPanel()
+        self.notices = NoticeBar()
+        self.actions_ = Actions(self)
+        self.setCentralWidget(self._lay_out())
+        self.setAcceptDrops(True)
+        self.resize(1280, 800)
+        self._due = QTimer(self, singleShot=True, interval=0)
+        self._due.timeout.connect(self.refresh)
+        session.listen(self._due.start)
+        self.shelf.cell_picked.connect(session.pick)
+        self.shelf.removal_asked.connect(self._remove)
+        self.waterfall.picked.connect(session.pick_line)
+        self.table.line_picked.connect(session.pick_line)
+        self.refresh()
+
+    def _lay_out(self) -> QWidget:
+        left = self._column(("Shelf", self.shelf), ("", self.inputs))
+        left.setStretchFactor(1, 1)
+        left.setSizes([190, 560])
+        plots = QSplitter(Qt.Orientation.Horizontal)
+        plots.addWidget(self.jv_plot)
+        plots.addWidget(self.gap_plot)
+        middle = QSplitter(Qt.Orientation.Vertical)
+        middle.addWidget(self.waterfall)
+        middle.addWidget(plots)
+        middle.setStretchFactor(0, 3)
+        middle.setStretchFactor(1, 2)
+        middle.setSizes([440, 270])
+        right = self._column(("Ledger", self.table), ("How the picked line came about", self.explanation))
+        right.setSizes([380, 330])
+        whole = QSplitter(Qt.Orientation.Horizontal)
+        for place, (widget, stretch) in enumerate(((left, 0), (middle, 3), (right, 1))):
+            whole.addWidget(widget)
+            whole.setStretchFactor(place, stretch)
+        whole.setSizes([296, 640, 344])
+        page = QWidget()
+        column = QVBoxLayout(page)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(0)
+        column.addWidget(self.notices)
+        column.addWidget(whole, 1)
+        return page
+
+    @staticmethod
+    def _column(*parts: tuple[str, QWidget]) -> QSplitter:
+        column = QSplitter(Qt.Orientation.Vertical)
+        column.setChildrenCollapsible(False)
+        for title, widget in parts:
+            if title:
+                box = QWidget()
+                inner = QVBoxLayout(box)
+                inner.setContentsMargins(0, 0, 0, 0)
+                inner.setSpacing(2)
+                head = heading(title)
+                head.setContentsMargins(10, 5, 0, 0)
+                inner.addWidget(head)
+                inner.addWidget(widget, 1)
+                widget = box
+            column.addWidget(widget)
+        return column
+
+    def refresh(self) -> None:
+        """Show the session as it is now."""
+        state = self.session.state
+        outcome = self.outcomes.current()
+        self.shelf.show_state(state)
+        self.inputs.show_outcome(outcome)
+        self._show_picture(outcome, state.line)
+        self.actions_.show_state(outcome)
+        name = "" if state.cell is None else state.cell.name
+        self.setWindowTitle(f"{name} – Gapledger" if name else "Gapledger")
+
+    def _show_picture(self, outcome: Outcome, line: str) -> None:
+        picture, stale = outcome.picture, outcome.stale
+        if picture is None:
+            hint = _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL
+            self.waterfall.show_spec(None, "", hint)
+            self.jv_plot.show_spec(None)
+            self.gap_plot.show_spec(None)
+            self.table.show_rows((), "")
+            self.explanation.show_explanation(None)
+            return
+        self.waterfall.show_spec(waterfall_of(picture, stale), line)
+        self.jv_plot.show_spec(jv_plot_of(picture, stale))
+        self.gap_plot.show_spec(gap_plot_of(picture, stale))
+        self.table.show_rows(ledger_rows(picture), line)
+        self.explanation.show_explanation(explain(picture.ledger, line, picture.entry.spectrum) if line else None)
+
+    def _remove(self) -> None:
+        cell = self.session.state.cell
+        if cell is not None:
+            self.session.do(RemoveCell(cell.ident))
+
+    def dragEnterEvent(self, event: QDragEnterEvent) -> None:
+        """Take files that are dropped on the window."""
+        if event.mimeData().hasUrls():
+            event.acceptProposedAction()
+
+    def dropEvent(self, event: QDropEvent) -> None:
+        """Open what was dropped as tables of cells."""
+        for url in event.mimeData().urls():
+            if url.isLocalFile():
+                self.actions_.open_table(Path(url.toLocalFile()))
+
+    def closeEvent(self, event: QCloseEvent) -> None:
+        """Close the windows beside this one, too."""
+        self.actions_.close_panels()
+        super().closeEvent(event)
+
+
