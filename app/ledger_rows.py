@@ -19,8 +19,8 @@ class LedgerRow:
 
     Parameters
     ----------
-    key, line : str
-        Identity and name.
+    key, line, short : str
+        Identity, name, and name for narrow places.
     family, section : str
         Where it belongs; empty for totals.
     amount, change, basis : str
@@ -37,6 +37,7 @@ class LedgerRow:
 
     key: str
     line: str
+    short: str
     family: str
     section: str
     amount: str
@@ -62,7 +63,7 @@ def ledger_rows(picture: Picture) -> tuple[LedgerRow, ...]:
     for entry in ledger.entries:
         if entry.line.section is Section.LIMIT_TO_CELL and rows[-1].section == Section.SUN_TO_LIMIT.value:
             power = float(ledger.limit.power)
-            rows.append(_total("detailed_balance", "Detailed-balance limit", power, incident, "calculated"))
+            rows.append(_total("detailed_balance", "Limit", power, incident, "calculated"))
         if entry.present:
             rows.append(_row(entry, incident))
     rows.append(_total("cell", picture.entry.name or "Cell", float(ledger.cell.power), incident, "measured"))
@@ -71,7 +72,7 @@ def ledger_rows(picture: Picture) -> tuple[LedgerRow, ...]:
 
 def _total(key: str, name: str, power: float, incident: float, basis: str) -> LedgerRow:
     share = power / incident
-    return LedgerRow(key, name, "", "", percent(share), "", basis, power, 100 * share, None, "", True)
+    return LedgerRow(key, name, name, "", "", percent(share), "", basis, power, 100 * share, None, "", True)
 
 
 def _row(entry: Entry, incident: float) -> LedgerRow:
@@ -81,6 +82,7 @@ def _row(entry: Entry, incident: float) -> LedgerRow:
     return LedgerRow(
         key=entry.line.key,
         line=entry.line.title,
+        short=entry.line.short,
         family=entry.line.family.value,
         section=entry.line.section.value,
         amount=loss_text(loss, incident),

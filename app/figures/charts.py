@@ -6,7 +6,7 @@ import math
 
 import numpy as np
 
-from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Step, WaterfallSpec
+from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
 from app.session.appraisal import light_named
 from app.session.outcome import Picture
 from app.wording import THIN, conventions_text, delta_text, inputs_text, loss_text, percent, with_unit
@@ -160,7 +160,7 @@ def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
         x_label="Voltage (V)",
         y_label="Current density (mA cm⁻²)",
         x_range=round_range(0.0, 1.02 * max(float(limit.voc), float(ledger.cell.voc))),
-        y_range=round_range(0.0, 1.04 * max(float(limit.jsc), float(ledger.cell.jsc))),
+        y_range=round_range(0.0, 1.12 * max(float(limit.jsc), float(ledger.cell.jsc))),
         series=tuple(series),
         marks=tuple(marks),
         caption=(note, *caption),
@@ -171,7 +171,8 @@ def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
 def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency: float) -> Mark:
     """The mark at the maximum power point of a drawn curve (nearest drawn point: a place, not a figure)."""
     at = int(np.argmax(voltage * current))
-    return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role)
+    side: Side = "n" if role == "limit" else "sw"  # over the outer curve, and inside the inner one
+    return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role, side=side)
 
 
 def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
@@ -179,6 +180,9 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
     gaps, ledger = picture.gap_curve, picture.ledger
     gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
     curve = 100.0 * gaps.efficiency
+    best = float(gaps.gap[np.argmax(curve)])
+    outside: Side = "ne" if gap > best else "nw"  # the curve falls away from its best gap: texts beside it stay clear
+    inside: Side = "sw" if gap > best else "se"
     return PlotSpec(
         title=f"{picture.entry.name}: efficiency against the gap",
         x_label="Gap (eV)",
@@ -187,8 +191,10 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
         y_range=round_range(0.0, 1.04 * float(np.max(curve))),
         series=(Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"),),
         marks=(
-            Mark("limit", f"limit{THIN}{percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", filled=False),
-            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell"),
+            Mark(
+                "limit", f"limit{THIN}{percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
+            ),
+            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell", side=inside),
         ),
         caption=caption_of(picture),
         stale=STALE if stale else "",

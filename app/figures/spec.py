@@ -137,11 +137,13 @@ class Series:
 
 
 Symbol = Literal["circle", "square", "diamond", "triangle"]
+#: Where a mark's text stands as seen from the mark, by the points of the compass.
+Side = Literal["n", "ne", "nw", "se", "sw"]
 
 
 @dataclass(frozen=True)
 class Mark:
-    """A single point of note in data units, with the text that stands beside it."""
+    """A single point of note in data units, with the text that stands beside it (on `side`, where there is room)."""
 
     key: str
     label: str
@@ -150,6 +152,7 @@ class Mark:
     role: Role
     symbol: Symbol = "circle"
     filled: bool = True
+    side: Side = "ne"
 
 
 @dataclass(frozen=True)

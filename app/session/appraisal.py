@@ -28,11 +28,14 @@ class Problem:
     severity : Severity
     message : str
         One plain sentence.
+    missing : bool
+        Nothing is wrong but that nothing was given yet.
     """
 
     field: str
     severity: Severity
     message: str
+    missing: bool = False
 
 
 @dataclass(frozen=True, eq=False)
@@ -95,7 +98,7 @@ def field_problems(values: Mapping[str, object]) -> list[Problem]:
         else:
             sentence = field.fault(float(value))  # type: ignore[arg-type]
         if sentence:
-            found.append(Problem(field.key, Severity.IMPOSSIBLE, sentence))
+            found.append(Problem(field.key, Severity.IMPOSSIBLE, sentence, missing=value is None))
     return found
 
 
@@ -146,9 +149,11 @@ def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
         sentence = gap_fault(gap, light)
         if sentence:
             problems.append(Problem("gap", Severity.IMPOSSIBLE, sentence))
-    if problems or light is None:
+    if light is None:
         return Appraisal(entry, tuple(problems), None)
-    ledger = ledger_of(Cell.of(**physics_values(entry.values)), light, choices.attribution, choices.faces)
+    wrong = {p.field for p in problems}
+    sound = {key: None if key in wrong else value for key, value in entry.values.items()}
+    ledger = ledger_of(Cell.of(**physics_values(sound)), light, choices.attribution, choices.faces)
     problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in failed(ledger)]
     forbidden = any(p.severity is Severity.IMPOSSIBLE for p in problems)
     return Appraisal(entry, tuple(problems), None if forbidden else ledger)

@@ -12,7 +12,7 @@ from app.session.outcome import Outcome
 from app.session.session import Session
 from app.session.state import Value
 from app.workbench.number_field import NumberField, ignore_wheel
-from app.workbench.theme import Theme, heading
+from app.workbench.theme import Heading, Theme
 
 _GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (
     ("Measured", ("gap", "voc", "jsc", "ff")),
@@ -35,7 +35,7 @@ class InputsPanel(QScrollArea):
         self._page = QWidget()
         self._page.setObjectName("inputs")
         column = QVBoxLayout(self._page)
-        column.setContentsMargins(10, 4, 10, 8)
+        column.setContentsMargins(10, 4, 12, 8)
         column.setSpacing(2)
         self.name = QLineEdit()
         self.note = QLineEdit()
@@ -80,10 +80,10 @@ class InputsPanel(QScrollArea):
         grid.setHorizontalSpacing(6)
         grid.setVerticalSpacing(3)
         grid.setContentsMargins(0, 4, 0, 4)
-        grid.setColumnMinimumWidth(0, 40)
+        grid.setColumnMinimumWidth(0, 36)
         grid.setColumnMinimumWidth(2, 58)
         grid.setColumnStretch(3, 1)
-        grid.addWidget(heading(title), 0, 0, 1, 4)
+        grid.addWidget(Heading(title), 0, 0, 1, 4)
         return grid
 
     def _group(self, title: str, keys: tuple[str, ...]) -> QGridLayout:
@@ -138,10 +138,11 @@ class InputsPanel(QScrollArea):
         for editor, text in ((self.name, entry.name), (self.note, entry.note)):
             if editor.text() != text:
                 editor.setText(text)
+                editor.setCursorPosition(0)
         self._show_spectrum(entry.spectrum)
         for key, field in self.fields.items():
             field.show_value(entry.values[key])
-            field.show_problem(appraisal.about(key))
+            field.show_problem(appraisal.about(key), gently=outcome.picture is None)
         problem = appraisal.about("spectrum")
         self.spectrum_message.setVisible(problem is not None)
         if problem is not None:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import QAbstractTableModel, QModelIndex, QPersistentModelIndex, Qt, Signal
-from PySide6.QtGui import QFont
+from PySide6.QtGui import QFont, QResizeEvent
 from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidget
 
 from app.ledger_rows import COLUMNS, LedgerRow
@@ -19,6 +19,7 @@ class LedgerModel(QAbstractTableModel):
     def __init__(self, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.rows: tuple[LedgerRow, ...] = ()
+        self._narrow = False
         self._bold = QFont()
         self._bold.setBold(True)
 
@@ -32,6 +33,12 @@ class LedgerModel(QAbstractTableModel):
             self.rows = rows
             self.dataChanged.emit(self.index(0, 0), self.index(len(rows) - 1, len(COLUMNS) - 1))
 
+    def set_narrow(self, narrow: bool) -> None:
+        """Use the short names of the lines, or the full ones."""
+        if narrow != self._narrow:
+            self._narrow = narrow
+            self.dataChanged.emit(self.index(0, 0), self.index(len(self.rows) - 1, 0))
+
     def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008 (Qt's own signature)
         """Number of lines and totals."""
         return 0 if parent.isValid() else len(self.rows)
@@ -44,7 +51,9 @@ class LedgerModel(QAbstractTableModel):
         """Text, alignment and weight of a cell."""
         row, column = self.rows[index.row()], COLUMNS[index.column()]
         if role == Qt.ItemDataRole.DisplayRole:
-            return row.text(column)
+            if column == "basis":
+                return row.basis.partition(":")[0]
+            return row.short[:1].upper() + row.short[1:] if column == "line" and self._narrow else row.text(column)
         if role == Qt.ItemDataRole.ToolTipRole:
             return f"{row.line}\n{row.basis}"
         if role == Qt.ItemDataRole.TextAlignmentRole and column in ("amount", "change"):
@@ -74,6 +83,8 @@ class LedgerTable(QTableView):
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self._model = LedgerModel(self)
+        self._names: tuple[str, ...] = ()
+        self._widest = 0
         self.setModel(self._model)
         self.setAccessibleName("Ledger: every line with its amount and basis")
         self.setSelectionBehavior(QAbstractItemView.SelectionBehavior.SelectRows)
@@ -89,7 +100,7 @@ class LedgerTable(QTableView):
         header.setSectionResizeMode(QHeaderView.ResizeMode.Fixed)
         header.setSectionResizeMode(0, QHeaderView.ResizeMode.Stretch)
         digit = self.fontMetrics().horizontalAdvance("0")
-        for column, digits in ((1, 10), (2, 15), (3, 11)):
+        for column, digits in ((1, 9), (2, 14), (3, 11)):
             self.setColumnWidth(column, digits * digit)
         self.clicked.connect(lambda index: self.line_picked.emit(self._model.rows[index.row()].key))
         self.selectionModel().currentRowChanged.connect(self._moved)
@@ -102,7 +113,20 @@ class LedgerTable(QTableView):
     def show_rows(self, rows: tuple[LedgerRow, ...], line: str) -> None:
         """Show these rows with one line picked."""
         self._model.show_rows(rows)
+        self._fit_names()
         at = next((k for k, row in enumerate(rows) if row.key == line), -1)
         if at != self.currentIndex().row():
             self.setCurrentIndex(self._model.index(at, 0) if at >= 0 else QModelIndex())
 
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Choose full or short names by the room there is."""
+        super().resizeEvent(event)
+        self._fit_names()
+
+    def _fit_names(self) -> None:
+        names = tuple(row.line for row in self._model.rows if not row.total)
+        if names != self._names:
+            self._names = names
+            self._widest = max((self.fontMetrics().horizontalAdvance(name) for name in names), default=0)
+        self._model.set_narrow(self._widest + 8 > self.columnWidth(0))

@@ -1,4 +1,7 @@
-"""One line above the work for what the program has to say: never in the way, gone at a click."""
+"""One line under the work for what the program has to say: never in the way, gone at a click.
+
+The line keeps its place when it is empty, so that nothing above it moves.
+"""
 
 from __future__ import annotations
 
@@ -21,21 +24,27 @@ class NoticeBar(QFrame):
         self.close_button = QToolButton()
         self.close_button.setText("✕")
         self.close_button.setAccessibleName("Dismiss the notice")
-        self.close_button.clicked.connect(self.hide)
+        self.close_button.clicked.connect(self.clear)
         row = QHBoxLayout(self)
         row.setContentsMargins(10, 3, 6, 3)
         row.addWidget(self.text, 1)
         row.addWidget(self.close_button, 0, Qt.AlignmentFlag.AlignTop)
-        self.setAutoFillBackground(True)
+        self.setMinimumHeight(self.fontMetrics().height() + 12)
         self._timer = QTimer(self, singleShot=True, interval=_SHORT_MS)
-        self._timer.timeout.connect(self.hide)
-        self.hide()
+        self._timer.timeout.connect(self.clear)
+        self.clear()
 
     def say(self, sentence: str, *, lasting: bool = False) -> None:
         """Show a sentence; a lasting one stays until it is dismissed."""
         self.text.setText(sentence)
-        self.show()
+        self.close_button.show()
         if lasting:
             self._timer.stop()
         else:
             self._timer.start()
+
+    def clear(self) -> None:
+        """Say nothing."""
+        self._timer.stop()
+        self.text.clear()
+        self.close_button.hide()

@@ -81,7 +81,7 @@ class NumberField(QObject):
         super().__init__(parent)
         self.field = field
         self._shown: Value = None
-        self._problem: Problem | None = None
+        self._problem: tuple[Problem | None, bool] = (None, False)
         self.label = QLabel(field.symbol, parent)
         self.entry = Entry(parent)
         self.unit = QLabel(field.unit, parent)
@@ -104,7 +104,8 @@ class NumberField(QObject):
         self.entry.setToolTip(tip)
         self.entry.setAccessibleName(name)
         self.entry.setPlaceholderText("" if field.required else "unknown" if field.default is None else "")
-        self.entry.setFixedWidth(self.entry.fontMetrics().horizontalAdvance("0") * 10 + 12)
+        self.entry.setFixedWidth(self.entry.fontMetrics().horizontalAdvance("0") * 8 + 14)
+        self.entry.setMinimumHeight(self.entry.sizeHint().height())
         self.entry.textEdited.connect(self._typed)
         self.entry.left.connect(self._left)
         self.entry.returnPressed.connect(self._left)
@@ -113,7 +114,7 @@ class NumberField(QObject):
         self.slider.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.slider.setAccessibleName(f"{name}, slider")
         self.slider.setToolTip(tip)
-        self.slider.setMinimumWidth(70)
+        self.slider.setMinimumWidth(50)
         self.slider.actionTriggered.connect(self._slid)
         self.slider.sliderReleased.connect(self.settled)
         self.message.setWordWrap(True)
@@ -131,19 +132,24 @@ class NumberField(QObject):
             if position != self.slider.value():
                 self.slider.setValue(position)
 
-    def show_problem(self, problem: Problem | None) -> None:
-        """Tell what is wrong beside the field."""
-        if problem == self._problem:
+    def show_problem(self, problem: Problem | None, gently: bool = False) -> None:
+        """Tell what is wrong beside the field; `gently` where a missing number is only not there yet."""
+        shown = (problem, gently)
+        if shown == self._problem:
             return
-        self._problem = problem
+        self._problem = shown
         self.message.setVisible(problem is not None)
+        trouble = ""
         if problem is None:
             self.message.clear()
+        elif problem.missing and gently:
+            trouble = "missing"
+            self.message.setText(problem.message)
         else:
-            refused = problem.severity is Severity.IMPOSSIBLE
-            self.message.setText(f"{'✕' if refused else '▲'} {problem.message}")
-            self._mark(self.message, "refused" if refused else "doubtful")
-        self._mark(self.entry, "" if problem is None else self.message.property("trouble"))
+            trouble = "refused" if problem.severity is Severity.IMPOSSIBLE else "doubtful"
+            self.message.setText(f"{'✕' if trouble == 'refused' else '▲'} {problem.message}")
+        for widget in (self.message, self.entry):
+            self._mark(widget, trouble)
 
     @staticmethod
     def _mark(widget: QWidget, trouble: str) -> None:

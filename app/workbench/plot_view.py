@@ -9,7 +9,7 @@ from PySide6.QtWidgets import QGraphicsItem, QGraphicsSimpleTextItem, QLabel, QV
 
 from app.figures.fonts import chart_font
 from app.figures.spec import Mark, PlotSpec, Series
-from app.workbench.theme import Theme, heading
+from app.workbench.theme import Heading, Theme
 
 _DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
 _SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
@@ -27,7 +27,7 @@ class PlotView(QWidget):
         self._curves: dict[str, pg.PlotCurveItem] = {}
         self._marks: dict[str, pg.ScatterPlotItem] = {}
         self._labels: dict[str, QGraphicsSimpleTextItem] = {}
-        self.head = heading(title)
+        self.head = Heading(title)
         self.key = QLabel()
         self.plot = pg.PlotWidget()
         self.plot.setAccessibleName(title)
@@ -38,6 +38,7 @@ class PlotView(QWidget):
         column.addWidget(self.head)
         column.addWidget(self.key)
         column.addWidget(self.plot, 1)
+        self.setAutoFillBackground(True)
         theme.changed.connect(self._recolour)
         self._recolour()
 
@@ -52,13 +53,18 @@ class PlotView(QWidget):
             axis.setCacheMode(QGraphicsItem.CacheMode.DeviceCoordinateCache)  # a grid costs 20 ms a paint without
             axis.setStyle(tickFont=chart_font(11, hinted=True), hideOverlappingLabels=True)
             axis.enableAutoSIPrefix(False)
+            axis.setTickDensity(1.6)
         item.getAxis("left").setWidth(46)
         self.plot.setMinimumSize(180, 120)
+        keep = self.plot.sizePolicy()
+        keep.setRetainSizeWhenHidden(True)
+        self.plot.setSizePolicy(keep)
         self.plot.scene().sigMouseClicked.connect(self._clicked)
 
     def show_spec(self, spec: PlotSpec | None) -> None:
         """Show a plot, or nothing."""
         previous, self._spec = self._spec, spec
+        self.head.mark_stale(spec is not None and bool(spec.stale))
         self.plot.setVisible(spec is not None)
         self.key.setVisible(spec is not None)
         if spec is None:
@@ -71,7 +77,7 @@ class PlotView(QWidget):
         for series in spec.series:
             self._show_series(series)
         for mark in spec.marks:
-            self._show_mark(mark, spec)
+            self._show_mark(mark)
         self._hide_missing(spec)
         if previous is None or [s.label for s in previous.series] != [s.label for s in spec.series]:
             self._show_key(spec)
@@ -102,7 +108,7 @@ class PlotView(QWidget):
         pen.setCosmetic(True)
         return pen
 
-    def _show_mark(self, mark: Mark, spec: PlotSpec) -> None:
+    def _show_mark(self, mark: Mark) -> None:
         dot, label = self._marks.get(mark.key), self._labels.get(mark.key)
         if dot is None or label is None:
             dot = pg.ScatterPlotItem(size=9, symbol=_SYMBOLS[mark.symbol], pxMode=True)
@@ -118,9 +124,14 @@ class PlotView(QWidget):
         if label.text() != mark.label:
             label.setText(mark.label)
         box = label.boundingRect()
-        near_right = mark.x > spec.x_range[0] + 0.6 * (spec.x_range[1] - spec.x_range[0])
-        near_top = mark.y > spec.y_range[0] + 0.85 * (spec.y_range[1] - spec.y_range[0])
-        shift = (-box.width() - 7 if near_right else 7, 4 if near_top else -box.height() - 3)
+        right, left, above, below = 7.0, -box.width() - 7.0, -box.height() - 4.0, 4.0
+        shift = {
+            "n": (-box.width() / 2, above - 2),
+            "ne": (right, above),
+            "nw": (left, above),
+            "se": (right, below),
+            "sw": (left, below),
+        }[mark.side]
         label.setTransform(QTransform.fromTranslate(*shift))
         label.setPos(mark.x, mark.y)
         dot.setVisible(True)
@@ -156,6 +167,9 @@ class PlotView(QWidget):
     def _recolour(self) -> None:
         palette = self._theme.palette
         self.plot.setBackground(palette.paper)
+        colours = self.palette()
+        colours.setColor(self.backgroundRole(), QColor(palette.paper))
+        self.setPalette(colours)
         for name in ("left", "bottom"):
             axis = self.plot.getPlotItem().getAxis(name)
             axis.setPen(pg.mkPen(palette.frame))

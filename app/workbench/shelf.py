@@ -57,7 +57,7 @@ class ShelfModel(QAbstractListModel):
             return "inputs missing"
         ledger = outcome.picture.ledger
         text = f"{percent(float(ledger.efficiency), 1)} of {percent(float(ledger.limit.efficiency), 1)}"
-        return f"{text}, before the last change" if outcome.stale else text
+        return f"{text} – last valid input" if outcome.stale else text
 
 
 class Shelf(QListView):

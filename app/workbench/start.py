@@ -45,6 +45,8 @@ def make_window(arguments: Sequence[str]) -> Window:
     window = Window(session)
     for argument in arguments:
         window.actions_.open_table(demo_path() if argument == "demo" else Path(argument))
+    if "demo" in arguments:
+        window.notices.say("Demo: these cells, and the group that made them, are invented.")
     if arguments:
         session.start_here()
     window.refresh()

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtCore import Qt, QTimer
+from PySide6.QtCore import QEvent, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import QMainWindow, QSplitter, QVBoxLayout, QWidget
 
@@ -21,7 +21,7 @@ from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
 from app.workbench.plot_view import PlotView
 from app.workbench.shelf import Shelf
-from app.workbench.theme import Theme, heading
+from app.workbench.theme import Heading, Theme
 from app.workbench.waterfall_view import WaterfallView
 
 _EMPTY_SHELF = "The shelf is empty. Press Ctrl+N for a new cell, or open a table of cells with Ctrl+O."
@@ -47,6 +47,7 @@ class Window(QMainWindow):
         self.table = LedgerTable(self.theme)
         self.explanation = ExplainPanel()
         self.notices = NoticeBar()
+        self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
         self.actions_ = Actions(self)
         self.setCentralWidget(self._lay_out())
         self.setAcceptDrops(True)
@@ -61,9 +62,10 @@ class Window(QMainWindow):
         self.refresh()
 
     def _lay_out(self) -> QWidget:
-        left = self._column(("Shelf", self.shelf), ("", self.inputs))
-        left.setStretchFactor(1, 1)
-        left.setSizes([190, 560])
+        left = self._column((Heading("Shelf"), self.shelf), (None, self.inputs))
+        left.setStretchFactor(0, 1)
+        left.setStretchFactor(1, 3)
+        left.setSizes([170, 580])
         plots = QSplitter(Qt.Orientation.Horizontal)
         plots.addWidget(self.jv_plot)
         plots.addWidget(self.gap_plot)
@@ -73,32 +75,31 @@ class Window(QMainWindow):
         middle.setStretchFactor(0, 3)
         middle.setStretchFactor(1, 2)
         middle.setSizes([440, 270])
-        right = self._column(("Ledger", self.table), ("How the picked line came about", self.explanation))
+        right = self._column((self._heads[0], self.table), (self._heads[1], self.explanation))
         right.setSizes([380, 330])
         whole = QSplitter(Qt.Orientation.Horizontal)
         for place, (widget, stretch) in enumerate(((left, 0), (middle, 3), (right, 1))):
             whole.addWidget(widget)
             whole.setStretchFactor(place, stretch)
-        whole.setSizes([296, 640, 344])
+        whole.setSizes([306, 578, 396])
         page = QWidget()
         column = QVBoxLayout(page)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(0)
-        column.addWidget(self.notices)
         column.addWidget(whole, 1)
+        column.addWidget(self.notices)
         return page
 
     @staticmethod
-    def _column(*parts: tuple[str, QWidget]) -> QSplitter:
+    def _column(*parts: tuple[Heading | None, QWidget]) -> QSplitter:
         column = QSplitter(Qt.Orientation.Vertical)
         column.setChildrenCollapsible(False)
-        for title, widget in parts:
-            if title:
+        for head, widget in parts:
+            if head is not None:
                 box = QWidget()
                 inner = QVBoxLayout(box)
                 inner.setContentsMargins(0, 0, 0, 0)
                 inner.setSpacing(2)
-                head = heading(title)
                 head.setContentsMargins(10, 5, 0, 0)
                 inner.addWidget(head)
                 inner.addWidget(widget, 1)
@@ -119,6 +120,8 @@ class Window(QMainWindow):
 
     def _show_picture(self, outcome: Outcome, line: str) -> None:
         picture, stale = outcome.picture, outcome.stale
+        for head in self._heads:
+            head.mark_stale(stale and picture is not None)
         if picture is None:
             hint = _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL
             self.waterfall.show_spec(None, "", hint)
@@ -137,6 +140,12 @@ class Window(QMainWindow):
         cell = self.session.state.cell
         if cell is not None:
             self.session.do(RemoveCell(cell.ident))
+
+    def changeEvent(self, event: QEvent) -> None:
+        """Follow the desktop between light and dark."""
+        super().changeEvent(event)
+        if event.type() in (QEvent.Type.PaletteChange, QEvent.Type.ThemeChange):
+            self.theme.changed.emit()
 
     def dragEnterEvent(self, event: QDragEnterEvent) -> None:
         """Take files that are dropped on the window."""
