@@ -182,7 +182,6 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
     curve = 100.0 * gaps.efficiency
     best = float(gaps.gap[np.argmax(curve)])
     outside: Side = "ne" if gap > best else "nw"  # the curve falls away from its best gap: texts beside it stay clear
-    inside: Side = "sw" if gap > best else "se"
     return PlotSpec(
         title=f"{picture.entry.name}: efficiency against the gap",
         x_label="Gap (eV)",
@@ -194,7 +193,7 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
             Mark(
                 "limit", f"limit{THIN}{percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
             ),
-            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell", side=inside),
+            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
         caption=caption_of(picture),
         stale=STALE if stale else "",

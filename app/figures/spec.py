@@ -138,7 +138,7 @@ class Series:
 
 Symbol = Literal["circle", "square", "diamond", "triangle"]
 #: Where a mark's text stands as seen from the mark, by the points of the compass.
-Side = Literal["n", "ne", "nw", "se", "sw"]
+Side = Literal["n", "s", "ne", "nw", "se", "sw"]
 
 
 @dataclass(frozen=True)

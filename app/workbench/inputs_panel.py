@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QGridLayout, QLabel, QLineEdit, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QLineEdit, QScrollArea, QVBoxLayout, QWidget
 
 from app.session.appraisal import light_named
 from app.session.commands import Describe, SetValue
@@ -11,7 +11,7 @@ from app.session.fields import FIELD_BY_KEY
 from app.session.outcome import Outcome
 from app.session.session import Session
 from app.session.state import Value
-from app.workbench.number_field import NumberField, ignore_wheel
+from app.workbench.number_field import NumberField, ignore_wheel, label_width
 from app.workbench.theme import Heading, Theme
 
 _GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (
@@ -32,19 +32,26 @@ class InputsPanel(QScrollArea):
         self.setWidgetResizable(True)
         self.setFrameShape(QScrollArea.Shape.NoFrame)
         self.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
+        # Qt sizes a page with wrapped texts for a viewport without the bar, which the bar would then cover.
+        self.setVerticalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOn)
         self._page = QWidget()
         self._page.setObjectName("inputs")
-        column = QVBoxLayout(self._page)
-        column.setContentsMargins(10, 4, 12, 8)
-        column.setSpacing(2)
         self.name = QLineEdit()
         self.note = QLineEdit()
         self.spectrum = QComboBox()
         self.spectrum_message = QLabel()
-        column.addLayout(self._heading())
         self.fields: dict[str, NumberField] = {}
+        column = QVBoxLayout(self._page)
+        column.setContentsMargins(10, 4, 10, 8)
+        column.setSpacing(3)
+        self._add_texts(column)
         for title, keys in _GROUPS:
-            column.addLayout(self._group(title, keys))
+            column.addSpacing(6)
+            column.addWidget(Heading(title))
+            if "irradiance" in keys:
+                self._add_spectrum(column)
+            for key in keys:
+                self._add_field(column, key)
         column.addStretch(1)
         self.setWidget(self._page)
         theme.changed.connect(self._recolour)
@@ -53,56 +60,38 @@ class InputsPanel(QScrollArea):
     def _recolour(self) -> None:
         self._page.setStyleSheet(self._theme.field_sheet)
 
-    def _heading(self) -> QGridLayout:
-        grid = self._grid("Cell")
-        for row, (text, editor, tip) in enumerate(
-            (
-                ("Name", self.name, "What the lab calls the cell; it heads every picture"),
-                ("Note", self.note, "Free text; it goes into the small print of pictures"),
-            ),
-            start=1,
+    def _row(self, text: str, editor: QWidget) -> QHBoxLayout:
+        label = QLabel(text)
+        label.setFixedWidth(label_width(label))
+        label.setBuddy(editor)
+        row = QHBoxLayout()
+        row.setSpacing(6)
+        row.addWidget(label)
+        row.addWidget(editor, 1)
+        return row
+
+    def _add_texts(self, column: QVBoxLayout) -> None:
+        column.addWidget(Heading("Cell"))
+        for text, editor, tip in (
+            ("Name", self.name, "What the lab calls the cell; it heads every picture"),
+            ("Note", self.note, "Free text; it goes into the small print of pictures"),
         ):
-            label = QLabel(text)
-            label.setBuddy(editor)
             editor.setToolTip(tip)
             editor.setAccessibleName(f"{text} of the cell")
             editor.setMaxLength(200)
-            grid.addWidget(label, row, 0)
-            grid.addWidget(editor, row, 1, 1, 3)
+            editor.editingFinished.connect(self._session.settle)
+            column.addLayout(self._row(text, editor))
         self.name.textEdited.connect(lambda text: self._describe(cell_name=text))
         self.note.textEdited.connect(lambda text: self._describe(note=text))
-        for editor in (self.name, self.note):
-            editor.editingFinished.connect(self._session.settle)
-        return grid
 
-    def _grid(self, title: str) -> QGridLayout:
-        grid = QGridLayout()
-        grid.setHorizontalSpacing(6)
-        grid.setVerticalSpacing(3)
-        grid.setContentsMargins(0, 4, 0, 4)
-        grid.setColumnMinimumWidth(0, 36)
-        grid.setColumnMinimumWidth(2, 58)
-        grid.setColumnStretch(3, 1)
-        grid.addWidget(Heading(title), 0, 0, 1, 4)
-        return grid
+    def _add_field(self, column: QVBoxLayout, key: str) -> None:
+        field = NumberField(FIELD_BY_KEY[key])
+        field.asked.connect(lambda value: self._ask(key, value))
+        field.settled.connect(self._session.settle)
+        self.fields[key] = field
+        column.addWidget(field)
 
-    def _group(self, title: str, keys: tuple[str, ...]) -> QGridLayout:
-        grid = self._grid(title)
-        row = 1
-        if "irradiance" in keys:
-            self._add_spectrum(grid, row)
-            row += 2
-        for key in keys:
-            field = NumberField(FIELD_BY_KEY[key], grid, row, self._page)
-            field.asked.connect(lambda value, key=key: self._ask(key, value))
-            field.settled.connect(self._session.settle)
-            self.fields[key] = field
-            row += 2
-        return grid
-
-    def _add_spectrum(self, grid: QGridLayout, row: int) -> None:
-        label = QLabel("Light")
-        label.setBuddy(self.spectrum)
+    def _add_spectrum(self, column: QVBoxLayout) -> None:
         for name in _SPECTRA:
             self.spectrum.addItem(light_named(name).title, name)
         self.spectrum.setAccessibleName("Spectrum of the light")
@@ -114,9 +103,8 @@ class InputsPanel(QScrollArea):
         self.spectrum_message.setWordWrap(True)
         self.spectrum_message.setProperty("trouble", "refused")
         self.spectrum_message.hide()
-        grid.addWidget(label, row, 0)
-        grid.addWidget(self.spectrum, row, 1, 1, 3)
-        grid.addWidget(self.spectrum_message, row + 1, 0, 1, 4)
+        column.addLayout(self._row("Light", self.spectrum))
+        column.addWidget(self.spectrum_message)
 
     def _ask(self, key: str, value: Value) -> None:
         cell = self._session.state.cell

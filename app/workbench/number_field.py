@@ -6,7 +6,7 @@ import math
 
 from PySide6.QtCore import QEvent, QObject, Qt, Signal
 from PySide6.QtGui import QFocusEvent, QWheelEvent
-from PySide6.QtWidgets import QGridLayout, QLabel, QLineEdit, QSizePolicy, QSlider, QWidget
+from PySide6.QtWidgets import QHBoxLayout, QLabel, QLineEdit, QSlider, QVBoxLayout, QWidget
 
 from app.files.numbers import NumberError, write_number
 from app.session.appraisal import Problem
@@ -37,6 +37,11 @@ def slider_position(field: Field, value: float) -> int:
     return round(_SLIDER_STEPS * min(max(share, 0.0), 1.0))
 
 
+def label_width(widget: QWidget) -> int:
+    """Width [px] of the column of names, the same for every row of the inputs."""
+    return widget.fontMetrics().horizontalAdvance("Name") + 4
+
+
 class CalmSlider(QSlider):
     """A slider that leaves the wheel to the scroll area around it unless it has the focus."""
 
@@ -63,7 +68,7 @@ class Entry(QLineEdit):
         self.left.emit()
 
 
-class NumberField(QObject):
+class NumberField(QWidget):
     """Binds one field of a cell to a row of widgets. It holds no value of its own: it shows one and asks for another.
 
     Signals
@@ -77,20 +82,26 @@ class NumberField(QObject):
     asked = Signal(object)
     settled = Signal()
 
-    def __init__(self, field: Field, grid: QGridLayout, row: int, parent: QWidget) -> None:
+    def __init__(self, field: Field, parent: QWidget | None = None) -> None:
         super().__init__(parent)
         self.field = field
         self._shown: Value = None
         self._problem: tuple[Problem | None, bool] = (None, False)
-        self.label = QLabel(field.symbol, parent)
-        self.entry = Entry(parent)
-        self.unit = QLabel(field.unit, parent)
-        self.slider = CalmSlider(Qt.Orientation.Horizontal, parent)
-        self.message = QLabel(parent)
+        self.label = QLabel(field.symbol)
+        self.entry = Entry()
+        self.unit = QLabel(field.unit)
+        self.slider = CalmSlider(Qt.Orientation.Horizontal)
+        self.message = QLabel()
         self._prepare()
-        for column, widget in enumerate((self.label, self.entry, self.unit, self.slider)):
-            grid.addWidget(widget, row, column)
-        grid.addWidget(self.message, row + 1, 0, 1, 4)
+        row = QHBoxLayout()
+        row.setSpacing(6)
+        for widget, stretch in ((self.label, 0), (self.entry, 0), (self.unit, 0), (self.slider, 1)):
+            row.addWidget(widget, stretch)
+        column = QVBoxLayout(self)
+        column.setContentsMargins(0, 0, 0, 0)
+        column.setSpacing(1)
+        column.addLayout(row)
+        column.addWidget(self.message)
 
     def _prepare(self) -> None:
         field = self.field
@@ -99,13 +110,14 @@ class NumberField(QObject):
             optional = f" Empty means {write_number(field.default)} {field.unit}."
         tip = f"{field.title}{f' in {field.unit}' if field.unit else ''}.{optional}"
         name = f"{field.title}{f' in {field.unit}' if field.unit else ''}"
+        self.label.setFixedWidth(label_width(self))
+        self.unit.setFixedWidth(self.fontMetrics().horizontalAdvance("mW cm⁻²") + 2)
         self.label.setBuddy(self.entry)
         self.label.setToolTip(tip)
         self.entry.setToolTip(tip)
         self.entry.setAccessibleName(name)
         self.entry.setPlaceholderText("" if field.required else "unknown" if field.default is None else "")
         self.entry.setFixedWidth(self.entry.fontMetrics().horizontalAdvance("0") * 8 + 14)
-        self.entry.setMinimumHeight(self.entry.sizeHint().height())
         self.entry.textEdited.connect(self._typed)
         self.entry.left.connect(self._left)
         self.entry.returnPressed.connect(self._left)
@@ -118,7 +130,6 @@ class NumberField(QObject):
         self.slider.actionTriggered.connect(self._slid)
         self.slider.sliderReleased.connect(self.settled)
         self.message.setWordWrap(True)
-        self.message.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Minimum)
         self.message.hide()
 
     def show_value(self, value: Value) -> None:

@@ -127,6 +127,7 @@ class PlotView(QWidget):
         right, left, above, below = 7.0, -box.width() - 7.0, -box.height() - 4.0, 4.0
         shift = {
             "n": (-box.width() / 2, above - 2),
+            "s": (-box.width() / 2, below + 3),
             "ne": (right, above),
             "nw": (left, above),
             "se": (right, below),
