@@ -265,14 +265,14 @@ def write_number(
         raise ValueError("Give digits or decimals, not both.")
     if (digits is not None and digits < 1) or (decimals is not None and decimals < 0):
         raise ValueError("Give at least one digit, or no fewer than zero decimals.")
-    text = write_exact(value)
-    if decimals is not None:
-        text = f"{value:.{decimals}f}"
-    elif digits is not None:
-        text = _significant(float(value), digits)
-    if float(text) == 0.0:
-        text = text.removeprefix("-")
-    if minus == "-":
+    number = float(value)
+    if not math.isfinite(number) or (decimals is None and digits is None):
+        text = write_exact(number)
+    else:
+        text = f"{number:.{decimals}f}" if decimals is not None else _significant(number, digits or 1)
+    if text[0] == "-" and float(text) == 0.0:
+        text = text[1:]
+    if minus == "-" or not ("e" in text or "-" in text):
         return text
     mantissa, letter, exponent = text.partition("e")
     power = f"×10{exponent.translate(_RAISE)}" if letter else ""

@@ -106,6 +106,11 @@ class InputsPanel(QScrollArea):
         column.addLayout(self._row("Light", self.spectrum))
         column.addWidget(self.spectrum_message)
 
+    @property
+    def sliding(self) -> bool:
+        """Whether the user holds a slider."""
+        return any(field.slider.isSliderDown() for field in self.fields.values())
+
     def _ask(self, key: str, value: Value) -> None:
         cell = self._session.state.cell
         if cell is not None:

@@ -9,6 +9,13 @@ from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidge
 from app.ledger_rows import COLUMNS, LedgerRow
 from app.workbench.theme import Theme
 
+# A view asks for some ten roles a cell at each paint: plain numbers make the answer quick.
+_TEXT = int(Qt.ItemDataRole.DisplayRole)
+_FONT = int(Qt.ItemDataRole.FontRole)
+_ALIGNMENT = int(Qt.ItemDataRole.TextAlignmentRole)
+_ROLES = frozenset({_TEXT, _FONT, _ALIGNMENT, int(Qt.ItemDataRole.ToolTipRole)})
+_RIGHT = int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
+
 Index = QModelIndex | QPersistentModelIndex
 _TITLES = {"line": "Line", "amount": "% of light", "change": "Change", "basis": "Basis"}
 
@@ -29,9 +36,13 @@ class LedgerModel(QAbstractTableModel):
             self.beginResetModel()
             self.rows = rows
             self.endResetModel()
-        elif rows != self.rows:
-            self.rows = rows
-            self.dataChanged.emit(self.index(0, 0), self.index(len(rows) - 1, len(COLUMNS) - 1))
+            return
+        changed = [k for k, (before, now) in enumerate(zip(self.rows, rows, strict=True)) if before != now]
+        previous, self.rows = self.rows, rows
+        if changed:  # while a slider moves, the names and bases mostly stay, and need no repaint
+            same = all(a.line == b.line and a.basis == b.basis for a, b in zip(previous, rows, strict=True))
+            first, last = (1, 2) if same else (0, len(COLUMNS) - 1)
+            self.dataChanged.emit(self.index(changed[0], first), self.index(changed[-1], last))
 
     def set_narrow(self, narrow: bool) -> None:
         """Use the short names of the lines, or the full ones."""
@@ -49,18 +60,18 @@ class LedgerModel(QAbstractTableModel):
 
     def data(self, index: Index, role: int = Qt.ItemDataRole.DisplayRole) -> object:
         """Text, alignment and weight of a cell."""
+        if role not in _ROLES:
+            return None
         row, column = self.rows[index.row()], COLUMNS[index.column()]
-        if role == Qt.ItemDataRole.DisplayRole:
+        if role == _TEXT:
             if column == "basis":
                 return row.basis.partition(":")[0]
             return row.short[:1].upper() + row.short[1:] if column == "line" and self._narrow else row.text(column)
-        if role == Qt.ItemDataRole.ToolTipRole:
-            return f"{row.line}\n{row.basis}"
-        if role == Qt.ItemDataRole.TextAlignmentRole and column in ("amount", "change"):
-            return int(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
-        if role == Qt.ItemDataRole.FontRole and row.total:
-            return self._bold
-        return None
+        if role == _ALIGNMENT:
+            return _RIGHT if column in ("amount", "change") else None
+        if role == _FONT:
+            return self._bold if row.total else None
+        return f"{row.line}\n{row.basis}"
 
     def headerData(self, section: int, orientation: Qt.Orientation, role: int = Qt.ItemDataRole.DisplayRole) -> object:
         """Name of a column."""

@@ -86,6 +86,7 @@ class NumberField(QWidget):
         super().__init__(parent)
         self.field = field
         self._shown: Value = None
+        self._touched = True
         self._problem: tuple[Problem | None, bool] = (None, False)
         self.label = QLabel(field.symbol)
         self.entry = Entry()
@@ -134,10 +135,11 @@ class NumberField(QWidget):
 
     def show_value(self, value: Value) -> None:
         """Show a value. What the user is typing stays as typed as long as it means that value."""
-        if value != self._shown or not self._means(value):
-            self._shown = value
-            if not self._means(value):
-                self.entry.setText(self._text(value))
+        if value == self._shown and not self._touched:
+            return
+        self._shown, self._touched = value, False
+        if self._read() != value:
+            self.entry.setText(self._text(value))
         if not self.slider.isSliderDown():
             position = slider_position(self.field, value) if isinstance(value, float | int) else 0
             if position != self.slider.value():
@@ -185,14 +187,13 @@ class NumberField(QWidget):
         except NumberError as fault:
             return Unread(text, str(fault))
 
-    def _means(self, value: Value) -> bool:
-        return self._read() == value
-
     def _typed(self) -> None:
+        self._touched = True
         self.asked.emit(self._read())
 
     def _left(self) -> None:
         """The visit is over: an empty field with a default takes it, and the number is written out plainly."""
+        self._touched = True
         value = self._read()
         if value is None and self.field.default is not None:
             self.asked.emit(self.field.default)
@@ -201,6 +202,7 @@ class NumberField(QWidget):
         self.settled.emit()
 
     def _slid(self) -> None:
+        self._touched = True
         self.asked.emit(slider_value(self.field, self.slider.sliderPosition()))
 
 

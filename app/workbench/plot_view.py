@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import numpy as np
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
 from PySide6.QtGui import QColor, QFont, QPen, QTransform
@@ -100,7 +101,9 @@ class PlotView(QWidget):
             curve = pg.PlotCurveItem(antialias=True, pen=self._pen(series))
             self._curves[series.key] = curve
             self.plot.addItem(curve, ignoreBounds=True)
-        curve.setData(series.x, series.y)
+        x, y = curve.getData()
+        if x is None or not (np.array_equal(x, series.x) and np.array_equal(y, series.y, equal_nan=True)):
+            curve.setData(series.x, series.y)
         curve.setVisible(True)
 
     def _pen(self, series: Series) -> QPen:
@@ -120,7 +123,9 @@ class PlotView(QWidget):
             self.plot.addItem(dot, ignoreBounds=True)
             self.plot.getViewBox().addItem(label, ignoreBounds=True)
             self._colour_mark(mark, dot, label)
-        dot.setData([mark.x], [mark.y])
+        x, y = dot.getData()
+        if len(x) == 0 or x[0] != mark.x or y[0] != mark.y:
+            dot.setData([mark.x], [mark.y])
         if label.text() != mark.label:
             label.setText(mark.label)
         box = label.boundingRect()

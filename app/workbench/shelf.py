@@ -19,6 +19,7 @@ class ShelfModel(QAbstractListModel):
         super().__init__(parent)
         self._outcomes = outcomes
         self._cells: tuple[CellEntry, ...] = ()
+        self._texts: dict[int, str] = {}  # as last shown: a repaint only where it would show something else
 
     @property
     def cells(self) -> tuple[CellEntry, ...]:
@@ -35,7 +36,7 @@ class ShelfModel(QAbstractListModel):
             self.endResetModel()
             return
         for row, (before, now) in enumerate(zip(previous, cells, strict=True)):
-            if before is not now:
+            if before is not now and self._texts.get(now.ident) != self._text(now):
                 self.dataChanged.emit(self.index(row), self.index(row))
 
     def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008 (Qt's own signature)
@@ -46,10 +47,14 @@ class ShelfModel(QAbstractListModel):
         """Name and efficiency of a cell."""
         cell = self._cells[index.row()]
         if role == Qt.ItemDataRole.DisplayRole:
-            return f"{cell.name or 'Unnamed cell'}\n{self._summary(cell)}"
+            text = self._texts[cell.ident] = self._text(cell)
+            return text
         if role == Qt.ItemDataRole.ToolTipRole:
             return "\n".join(part for part in (cell.name, cell.group, cell.note) if part)
         return None
+
+    def _text(self, cell: CellEntry) -> str:
+        return f"{cell.name or 'Unnamed cell'}\n{self._summary(cell)}"
 
     def _summary(self, cell: CellEntry) -> str:
         outcome = self._outcomes.of(cell)

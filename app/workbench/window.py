@@ -45,7 +45,7 @@ class Window(QMainWindow):
         self.jv_plot = PlotView("Current density against voltage", self.theme)
         self.gap_plot = PlotView("Efficiency against the gap", self.theme)
         self.table = LedgerTable(self.theme)
-        self.explanation = ExplainPanel()
+        self.explanation = ExplainPanel(self.theme)
         self.notices = NoticeBar()
         self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
         self.actions_ = Actions(self)
@@ -54,6 +54,8 @@ class Window(QMainWindow):
         self.resize(1280, 800)
         self._due = QTimer(self, singleShot=True, interval=0)
         self._due.timeout.connect(self.refresh)
+        self._texts_due = QTimer(self, singleShot=True, interval=33)
+        self._texts_due.timeout.connect(self._show_texts)
         session.listen(self._due.start)
         self.shelf.cell_picked.connect(session.pick)
         self.shelf.removal_asked.connect(self._remove)
@@ -108,33 +110,42 @@ class Window(QMainWindow):
         return column
 
     def refresh(self) -> None:
-        """Show the session as it is now."""
-        state = self.session.state
-        outcome = self.outcomes.current()
-        self.shelf.show_state(state)
-        self.inputs.show_outcome(outcome)
-        self._show_picture(outcome, state.line)
-        self.actions_.show_state(outcome)
-        name = "" if state.cell is None else state.cell.name
-        self.setWindowTitle(f"{name} – Gapledger" if name else "Gapledger")
+        """Show the session as it is now.
 
-    def _show_picture(self, outcome: Outcome, line: str) -> None:
+        While a slider is held, the charts and the inputs follow in the same frame and the texts behind them thirty
+        times a second, which is faster than digits can be read.
+        """
+        outcome = self.outcomes.current()
+        self.inputs.show_outcome(outcome)
+        self.actions_.show_state(outcome)
+        self._show_charts(outcome)
+        if not self.inputs.sliding:
+            self._show_texts()
+        elif not self._texts_due.isActive():
+            self._texts_due.start()
+
+    def _show_charts(self, outcome: Outcome) -> None:
         picture, stale = outcome.picture, outcome.stale
-        for head in self._heads:
-            head.mark_stale(stale and picture is not None)
         if picture is None:
-            hint = _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL
-            self.waterfall.show_spec(None, "", hint)
+            self.waterfall.show_spec(None, "", _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL)
             self.jv_plot.show_spec(None)
             self.gap_plot.show_spec(None)
-            self.table.show_rows((), "")
-            self.explanation.show_explanation(None)
             return
-        self.waterfall.show_spec(waterfall_of(picture, stale), line)
+        self.waterfall.show_spec(waterfall_of(picture, stale), self.session.state.line)
         self.jv_plot.show_spec(jv_plot_of(picture, stale))
         self.gap_plot.show_spec(gap_plot_of(picture, stale))
-        self.table.show_rows(ledger_rows(picture), line)
-        self.explanation.show_explanation(explain(picture.ledger, line, picture.entry.spectrum) if line else None)
+
+    def _show_texts(self) -> None:
+        state, outcome = self.session.state, self.outcomes.current()
+        picture, line = outcome.picture, state.line
+        self.shelf.show_state(state)
+        name = "" if state.cell is None else state.cell.name
+        self.setWindowTitle(f"{name} – Gapledger" if name else "Gapledger")
+        for head in self._heads:
+            head.mark_stale(outcome.stale and picture is not None)
+        self.table.show_rows(() if picture is None else ledger_rows(picture), line)
+        explanation = explain(picture.ledger, line, picture.entry.spectrum) if picture is not None and line else None
+        self.explanation.show_explanation(explanation)
 
     def _remove(self) -> None:
         cell = self.session.state.cell
