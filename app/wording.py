@@ -174,9 +174,18 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
         inner = _WEIGHTS.get((ledger.attribution, weight.strip("{}")))
         if inner:
             steps += [f"{symbols_in(weight)} = {symbols_in(inner)}", f"= {numbers_in(inner, q)}"]
+            if "Λ" in inner:
+                steps.append("with Λ(a, b) = (a − b) / ln(a / b), the logarithmic mean")
             names += _NAME.findall(inner)
         else:
             names += _NAME.findall(weight)
+    if form.implied is not None:
+        value = with_unit(float(form.implied.value(q)), "")
+        steps += [
+            f"{form.implied.symbol} = {symbols_in(form.implied.equation)}",
+            f"= {numbers_in(form.implied.equation, q)} = {value}",
+        ]
+        names += _NAME.findall(form.implied.equation)
     return Explanation(
         entry.line.title,
         f"{loss_text(float(entry.loss), float(q.incident))} of the incident power",
@@ -190,9 +199,13 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
 def _total(title: str, ledger: Ledger, equation: str, name: str, basis: str, source: str) -> Explanation:
     q = ledger.quantities
     power = float(getattr(q, name))
+    which = 0 if name == "power_limit" else 1
+    factors = {title: float(pair[which]) for title, pair in ledger.factors().items()}
     steps = (
         f"{meaning(name).symbol} = {symbols_in(equation)}",
         f"= {numbers_in(equation, q)} = {with_unit(power, 'mW cm⁻²')}",
+        f"Efficiency = {' × '.join(factors)}",
+        f"= {' × '.join(percent(value, 1) for value in factors.values())} = {percent(power / float(q.incident))}",
     )
     amount = f"{percent(power / float(q.incident))} of the incident power"
     return Explanation(title, amount, steps, _given(_NAME.findall(equation), q), basis, source)

@@ -29,10 +29,12 @@ def log_mean(a: ArrayLike, b: ArrayLike) -> Array:
 
     Notes
     -----
-    Computed as b·t/ln(1 + t) with t = (a − b)/b, which loses no digits where a is close to b.
+    Computed as b·t/ln(1 + t) with b the lesser of the two and t = (a − b)/b, which loses no digits where a is close
+    to b, nor where they are far apart.
     """
-    a, b = np.asarray(a, dtype=float), np.asarray(b, dtype=float)
-    valid = (a > 0) & (b > 0)
+    first, second = np.asarray(a, dtype=float), np.asarray(b, dtype=float)
+    a, b = np.maximum(first, second), np.minimum(first, second)
+    valid = b > 0
     t = np.where(valid, a - b, 0.0) / np.where(valid, b, 1.0)
     same = t == 0.0
     mean = b * np.where(same, 1.0, t) / np.where(same, 1.0, np.log1p(np.where(same, 1.0, t)))

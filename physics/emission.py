@@ -23,7 +23,7 @@ def _bose_tail(x: Array, power: int) -> Array:
     Writing 1/(eᵗ − 1) = Σ e⁻ⁿᵗ and integrating by parts gives one polynomial in x and 1/n a term. The terms fall
     as e⁻ⁿˣ, so 38/x of them reach double precision.
     """
-    x = np.where(x >= _SMALLEST_X, x, np.nan)
+    x = np.where((x >= _SMALLEST_X) & (x < np.inf), x, np.nan)
     smallest = np.nanmin(x) if np.any(x >= _SMALLEST_X) else 1.0
     step = np.exp(-x)
     total = np.zeros_like(x)
@@ -35,6 +35,12 @@ def _bose_tail(x: Array, power: int) -> Array:
         else:
             total += decay * (x**3 / n + 3.0 * x * x / n**2 + 6.0 * x / n**3 + 6.0 / n**4)
     return total
+
+
+def _thermal_energy(temperature: ArrayLike) -> Array:
+    """Energy kT [J]; NaN where T is not above 0 K."""
+    kelvin = np.asarray(temperature, dtype=float)
+    return BOLTZMANN * np.where(kelvin > 0, kelvin, np.nan)
 
 
 def photon_current(gap: ArrayLike, temperature: ArrayLike) -> Array:
@@ -59,7 +65,7 @@ def photon_current(gap: ArrayLike, temperature: ArrayLike) -> Array:
     With the cell's own temperature this is the radiative recombination current J0 of a step absorber with an
     ideal rear mirror: Shockley and Queisser, J. Appl. Phys. 32 (1961) 510, doi:10.1063/1.1736034.
     """
-    kt = BOLTZMANN * np.asarray(temperature, dtype=float)
+    kt = _thermal_energy(temperature)
     x = np.asarray(gap, dtype=float) * ELEMENTARY_CHARGE / kt
     return ELEMENTARY_CHARGE * _HEMISPHERE * kt**3 * _bose_tail(x, 2) * PER_M2
 
@@ -69,7 +75,7 @@ def radiant_power(gap: ArrayLike, temperature: ArrayLike) -> Array:
 
     p(Eg, T) = (2π/h³c²) ∫_Eg^∞ E³/(exp(E/kT) − 1) dE; arguments and shapes as in `photon_current`, result [mW cm⁻²].
     """
-    kt = BOLTZMANN * np.asarray(temperature, dtype=float)
+    kt = _thermal_energy(temperature)
     x = np.asarray(gap, dtype=float) * ELEMENTARY_CHARGE / kt
     return _HEMISPHERE * kt**4 * _bose_tail(x, 3) * PER_M2
 

@@ -92,7 +92,7 @@ def detailed_balance_limit(
     Returns
     -------
     Limit
-        NaN for gaps that the spectrum does not cover.
+        NaN for gaps that the spectrum does not cover, and for a temperature or irradiance that is not above zero.
 
     Notes
     -----
@@ -103,12 +103,12 @@ def detailed_balance_limit(
     gap, temperature, irradiance = np.broadcast_arrays(
         *(np.asarray(a, dtype=float) for a in (gap, temperature, irradiance))
     )
-    incident = np.where(np.isnan(irradiance), light.power, irradiance)
+    incident = np.where(np.isnan(irradiance), light.power, np.where(irradiance > 0, irradiance, np.nan))
     scale = incident / light.power
     jsc = scale * light.photon_current_above(gap)
     j0 = faces * photon_current(gap, temperature)
     vt = thermal_voltage(temperature)
-    voc = vt * np.log1p(jsc / j0)
+    voc = vt * np.log1p(jsc / np.where(j0 > 0, j0, np.nan))
     return Limit(
         gap=gap,
         temperature=temperature,

@@ -71,6 +71,25 @@ FILL = Factor("", lambda q: q.weight_fill, "{weight_fill}")
 
 
 @dataclass(frozen=True)
+class Implied:
+    """A figure that follows from a line as well.
+
+    Parameters
+    ----------
+    symbol : str
+        What it is, a pure number.
+    equation : str
+        How it follows; names in braces are fields of `Quantities`.
+    value : callable
+        Quantities -> the figure.
+    """
+
+    symbol: str
+    equation: str
+    value: Callable[[Quantities], Array]
+
+
+@dataclass(frozen=True)
 class Form:
     """One way to find a line's Δ, and when it applies.
 
@@ -86,6 +105,8 @@ class Form:
         What is assumed, or what the line rests on; may be empty.
     applies : callable, optional
         Quantities -> mask of the cells for which this form serves; every cell if left out.
+    implied : Implied, optional
+        A figure that is worth telling beside the line.
     """
 
     equation: str
@@ -93,6 +114,7 @@ class Form:
     basis: Basis
     reason: str = ""
     applies: Callable[[Quantities], Mask] | None = None
+    implied: Implied | None = None
 
 
 @dataclass(frozen=True)
@@ -204,12 +226,15 @@ LINES: tuple[Line, ...] = (
             Form(
                 "{voc_rad} − {voc}", lambda q: q.voc_rad - q.voc,
                 Basis.ASSUMED, "by reciprocity, with a step edge",
+                implied=Implied(
+                    "ERE", "exp(({voc} − {voc_rad}) / {vt})", lambda q: np.exp((q.voc - q.voc_rad) / q.vt)
+                ),
             ),
         ),
         _RAU,
     ),
     Line(
-        "voltage_residual", "Voltage not accounted for", "rest of voltage", Family.VOLTAGE,
+        "voltage_residual", "Voltage not accounted for", "voltage, rest", Family.VOLTAGE,
         Section.LIMIT_TO_CELL, VOLTAGE,
         (Form(
             "{voc_rad} + {vt} · ln {ere} − {voc}", lambda q: q.voc_rad + q.vt * np.log(q.ere) - q.voc,
@@ -232,14 +257,14 @@ LINES: tuple[Line, ...] = (
         _GREEN,
     ),
     Line(
-        "fill_series", "Series resistance", "series", Family.FILL, Section.LIMIT_TO_CELL, FILL,
+        "fill_series", "Series resistance", "series resistance", Family.FILL, Section.LIMIT_TO_CELL, FILL,
         _with_or_without_ideality(
             "{ff_without_rs} − {ff_with_rs}", lambda q: q.ff_without_rs - q.ff_with_rs, _HAS_RS
         ),
         _GREEN,
     ),
     Line(
-        "fill_shunt", "Shunts", "shunt", Family.FILL, Section.LIMIT_TO_CELL, FILL,
+        "fill_shunt", "Shunts", "shunts", Family.FILL, Section.LIMIT_TO_CELL, FILL,
         _with_or_without_ideality(
             "{ff_without_rsh} − {ff_with_rsh}", lambda q: q.ff_without_rsh - q.ff_with_rsh, _HAS_RSH
         ),
@@ -264,7 +289,7 @@ LINES: tuple[Line, ...] = (
         _DIFFERENCE,
     ),
     Line(
-        "fill_residual", "Fill factor not accounted for", "rest of fill factor", Family.FILL,
+        "fill_residual", "Fill factor not accounted for", "fill factor, rest", Family.FILL,
         Section.LIMIT_TO_CELL, FILL,
         (Form(
             "{ff_diode} − {ff}", lambda q: q.ff_diode - q.ff, Basis.MEASURED, "the rest",

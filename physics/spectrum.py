@@ -104,9 +104,10 @@ class Spectrum:
 
     def _up_to(self, gap: ArrayLike, sums: Array, part: _Part) -> Array:
         """A running sum up to the wavelength of `gap`; NaN for gaps that the table does not cover."""
-        edge = EV_NM / np.asarray(gap, dtype=float)
-        inside = (edge >= self.wavelength[0]) & (edge <= self.wavelength[-1])
-        edge = np.where(inside, edge, self.wavelength[0])
+        energy = np.asarray(gap, dtype=float)
+        low, high = self.gap_range
+        inside = (energy >= low) & (energy <= high)
+        edge = np.clip(EV_NM / np.where(inside, energy, high), self.wavelength[0], self.wavelength[-1])
         segment = np.minimum(np.searchsorted(self.wavelength, edge, side="right"), self.wavelength.size - 1) - 1
         value = sums[segment] + part(segment, edge - self.wavelength[segment])
         return np.where(inside, value, np.nan)
