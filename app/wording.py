@@ -17,6 +17,11 @@ MINUS = "−"
 THIN = "\u2009"  # between a number and its unit
 
 
+def unbroken(text: str) -> str:
+    """A text that no line break may part."""
+    return text.replace(" ", "\u00a0")
+
+
 def percent(fraction: float, decimals: int = 2) -> str:
     """A fraction as a percentage ("26.72 %")."""
     return f"{write_number(100.0 * fraction, decimals=decimals)}{THIN}%"
@@ -224,7 +229,7 @@ def inputs_text(entry: CellEntry) -> str:
     for field in FIELDS:
         value = entry.values.get(field.key)
         if isinstance(value, float | int):
-            parts.append(f"{field.symbol} {with_unit(float(value), field.unit, 6)}")
+            parts.append(unbroken(f"{field.symbol} {with_unit(float(value), field.unit, 6)}"))
     return " · ".join(parts)
 
 

@@ -9,7 +9,7 @@ import numpy as np
 from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
 from app.session.appraisal import light_named
 from app.session.outcome import Picture
-from app.wording import THIN, conventions_text, delta_text, inputs_text, loss_text, percent, with_unit
+from app.wording import basis_text, conventions_text, delta_text, inputs_text, loss_text, percent, unbroken, with_unit
 from physics.ledger import Entry, Ledger, entries_of
 from physics.lines import Basis, Family, Section
 
@@ -45,7 +45,7 @@ def caption_of(picture: Picture) -> tuple[str, ...]:
     """Small print under every chart of a cell."""
     entry = picture.entry
     light = light_named(entry.spectrum).title
-    lines = [f"{inputs_text(entry)} · {light}", conventions_text(picture.choices)]
+    lines = [f"{inputs_text(entry)} · {unbroken(light)}", conventions_text(picture.choices)]
     if entry.note:
         lines.append(entry.note)
     return tuple(lines)
@@ -78,9 +78,24 @@ def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
         axis_label="Share of the incident power (%)",
         axis_range=_axis(steps),
         legend=tuple((_ROLES[f], _FAMILY_NAMES[f]) for f in families),
-        caption=caption_of(picture),
+        caption=(*_marks_explained(ledger), *caption_of(picture)),
         stale=STALE if stale else "",
     )
+
+
+def _marks_explained(ledger: Ledger) -> tuple[str, ...]:
+    """What a broken outline and an arrow mean, where the chart has them."""
+    lines = []
+    reasons = [
+        basis_text(form).partition(": ")[2]
+        for e in entries_of(ledger, Section.LIMIT_TO_CELL)
+        if (form := e.form_at()) is not None and form.basis is Basis.ASSUMED
+    ]
+    if reasons:
+        lines.append(f"Broken outline: assumed ({'; '.join(dict.fromkeys(reasons))})")
+    if any(float(e.loss) < 0.0 for e in entries_of(ledger, Section.LIMIT_TO_CELL)):
+        lines.append("Arrow: a gain")
+    return tuple(lines)
 
 
 def _segments(ledger: Ledger, limit: float) -> tuple[Segment, ...]:
@@ -191,9 +206,9 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
         series=(Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"),),
         marks=(
             Mark(
-                "limit", f"limit{THIN}{percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
+                "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
             ),
-            Mark("cell", f"{picture.entry.name}{THIN}{percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
+            Mark("cell", f"{picture.entry.name} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
         caption=caption_of(picture),
         stale=STALE if stale else "",
