@@ -1,194 +1,91 @@
-"""A live plot of curves and marks. Items are made once and only moved; ranges change only when they must."""
+"""A live plot with its heading and the key to its curves."""
 
 from __future__ import annotations
 
-import numpy as np
-import pyqtgraph as pg
-from PySide6.QtCore import Qt
-from PySide6.QtGui import QColor, QFont, QPen, QTransform
-from PySide6.QtWidgets import QGraphicsItem, QGraphicsSimpleTextItem, QLabel, QVBoxLayout, QWidget
+from html import escape
+from typing import TYPE_CHECKING
 
-from app.figures.fonts import chart_font
-from app.figures.spec import Mark, PlotSpec, Series
+from PySide6.QtGui import QColor
+from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+
+from app.figures.spec import PlotSpec
 from app.workbench.theme import Heading, Theme
 
-_DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
-_SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
-_LABEL_PX = 12
+if TYPE_CHECKING:
+    from app.workbench.plot_canvas import PlotCanvas
+
+_STROKES = {"solid": "━━", "dashed": "╍╍", "dotted": "┄┄"}
 
 
 class PlotView(QWidget):
-    """Shows a `PlotSpec`. The wheel zooms and dragging moves; a double click shows the whole plot again."""
+    """Shows a `PlotSpec`.
+
+    The canvas comes on first need, because importing pyqtgraph takes a third of the time from the start of the
+    program to its window; the window shows itself first and then asks for the canvas.
+    """
 
     def __init__(self, title: str, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self._title = title
         self._theme = theme
         self._spec: PlotSpec | None = None
-        self._ranges: tuple[tuple[float, float], tuple[float, float]] | None = None
-        self._curves: dict[str, pg.PlotCurveItem] = {}
-        self._marks: dict[str, pg.ScatterPlotItem] = {}
-        self._labels: dict[str, QGraphicsSimpleTextItem] = {}
+        self._canvas: PlotCanvas | None = None
         self.head = Heading(title)
         self.key = QLabel()
-        self.plot = pg.PlotWidget()
-        self.plot.setAccessibleName(title)
-        self._prepare()
-        column = QVBoxLayout(self)
-        column.setContentsMargins(8, 4, 8, 4)
-        column.setSpacing(0)
-        column.addWidget(self.head)
-        column.addWidget(self.key)
-        column.addWidget(self.plot, 1)
+        self._column = QVBoxLayout(self)
+        self._column.setContentsMargins(8, 4, 8, 4)
+        self._column.setSpacing(0)
+        self._column.addWidget(self.head)
+        self._column.addWidget(self.key)
+        self._column.addStretch(1)
+        self.setMinimumSize(200, 160)
         self.setAutoFillBackground(True)
         theme.changed.connect(self._recolour)
         self._recolour()
 
-    def _prepare(self) -> None:
-        item = self.plot.getPlotItem()
-        item.setMenuEnabled(False)  # its menu offers exporters that do not draw what the screen shows
-        item.hideButtons()
-        item.disableAutoRange()
-        item.showGrid(x=True, y=True, alpha=0.15)
-        for name in ("left", "bottom"):
-            axis = item.getAxis(name)
-            axis.setCacheMode(QGraphicsItem.CacheMode.DeviceCoordinateCache)  # a grid costs 20 ms a paint without
-            axis.setStyle(tickFont=chart_font(11, hinted=True), hideOverlappingLabels=True)
-            axis.enableAutoSIPrefix(False)
-            axis.setTickDensity(1.6)
-        item.getAxis("left").setWidth(46)
-        self.plot.setMinimumSize(180, 120)
-        keep = self.plot.sizePolicy()
-        keep.setRetainSizeWhenHidden(True)
-        self.plot.setSizePolicy(keep)
-        self.plot.scene().sigMouseClicked.connect(self._clicked)
+    @property
+    def canvas(self) -> PlotCanvas:
+        """The canvas, made now if there is none yet."""
+        if self._canvas is None:
+            from app.workbench.plot_canvas import PlotCanvas
+
+            self._canvas = PlotCanvas(self._title, self._theme)
+            self._canvas.setVisible(self._spec is not None)
+            self._column.insertWidget(2, self._canvas, 1000)
+            if self._spec is not None:
+                self._canvas.show_spec(self._spec)
+        return self._canvas
 
     def show_spec(self, spec: PlotSpec | None) -> None:
         """Show a plot, or nothing."""
         previous, self._spec = self._spec, spec
         self.head.mark_stale(spec is not None and bool(spec.stale))
-        self.plot.setVisible(spec is not None)
         self.key.setVisible(spec is not None)
-        if spec is None:
-            return
-        if previous is None or previous.x_label != spec.x_label:
-            self._label_axes(spec)
-        if self._ranges != (spec.x_range, spec.y_range):
-            self._ranges = (spec.x_range, spec.y_range)
-            self._show_all()
-        for series in spec.series:
-            self._show_series(series)
-        for mark in spec.marks:
-            self._show_mark(mark)
-        self._hide_missing(spec)
-        if previous is None or [s.label for s in previous.series] != [s.label for s in spec.series]:
+        if self._canvas is not None:
+            self._canvas.setVisible(spec is not None)
+            if spec is not None:
+                self._canvas.show_spec(spec)
+        if spec is not None and (previous is None or _labels(previous) != _labels(spec)):
             self._show_key(spec)
-
-    def _show_all(self) -> None:
-        if self._ranges is not None:
-            (left, right), (bottom, top) = self._ranges
-            self.plot.setRange(xRange=(left, right), yRange=(bottom, top), padding=0.0)
-
-    def _label_axes(self, spec: PlotSpec) -> None:
-        palette = self._theme.palette
-        style = {"color": palette.ink, "font-size": "9pt"}
-        item = self.plot.getPlotItem()
-        item.getAxis("bottom").setLabel(spec.x_label, **style)
-        item.getAxis("left").setLabel(spec.y_label, **style)
-
-    def _show_series(self, series: Series) -> None:
-        curve = self._curves.get(series.key)
-        if curve is None:
-            curve = pg.PlotCurveItem(antialias=True, pen=self._pen(series))
-            self._curves[series.key] = curve
-            self.plot.addItem(curve, ignoreBounds=True)
-        x, y = curve.getData()
-        if x is None or not (np.array_equal(x, series.x) and np.array_equal(y, series.y, equal_nan=True)):
-            curve.setData(series.x, series.y)
-        curve.setVisible(True)
-
-    def _pen(self, series: Series) -> QPen:
-        pen = QPen(QColor(self._theme.palette.tones[series.role].ink), 2.0, _DASHES[series.dash])
-        pen.setCosmetic(True)
-        return pen
-
-    def _show_mark(self, mark: Mark) -> None:
-        dot, label = self._marks.get(mark.key), self._labels.get(mark.key)
-        if dot is None or label is None:
-            dot = pg.ScatterPlotItem(size=9, symbol=_SYMBOLS[mark.symbol], pxMode=True)
-            label = QGraphicsSimpleTextItem()
-            label.setFlag(QGraphicsItem.GraphicsItemFlag.ItemIgnoresTransformations)
-            font = QFont(chart_font(_LABEL_PX, bold=True, hinted=True))
-            label.setFont(font)
-            self._marks[mark.key], self._labels[mark.key] = dot, label
-            self.plot.addItem(dot, ignoreBounds=True)
-            self.plot.getViewBox().addItem(label, ignoreBounds=True)
-            self._colour_mark(mark, dot, label)
-        x, y = dot.getData()
-        if len(x) == 0 or x[0] != mark.x or y[0] != mark.y:
-            dot.setData([mark.x], [mark.y])
-        if label.text() != mark.label:
-            label.setText(mark.label)
-        box = label.boundingRect()
-        right, left, above, below = 7.0, -box.width() - 7.0, -box.height() - 4.0, 4.0
-        shift = {
-            "n": (-box.width() / 2, above - 2),
-            "s": (-box.width() / 2, below + 3),
-            "ne": (right, above),
-            "nw": (left, above),
-            "se": (right, below),
-            "sw": (left, below),
-        }[mark.side]
-        label.setTransform(QTransform.fromTranslate(*shift))
-        label.setPos(mark.x, mark.y)
-        dot.setVisible(True)
-        label.setVisible(True)
-
-    def _hide_missing(self, spec: PlotSpec) -> None:
-        series, marks = {s.key for s in spec.series}, {m.key for m in spec.marks}
-        for key, curve in self._curves.items():
-            if key not in series:
-                curve.setVisible(False)
-        for key, dot in self._marks.items():
-            if key not in marks:
-                dot.setVisible(False)
-                self._labels[key].setVisible(False)
-
-    def _colour_mark(self, mark: Mark, dot: pg.ScatterPlotItem, label: QGraphicsSimpleTextItem) -> None:
-        palette = self._theme.palette
-        ink = palette.tones[mark.role].ink
-        dot.setPen(pg.mkPen(ink, width=2))
-        dot.setBrush(pg.mkBrush(ink if mark.filled else palette.paper))
-        label.setBrush(QColor(ink))
 
     def _show_key(self, spec: PlotSpec) -> None:
         """One line that names the curves by colour and stroke."""
-        strokes = {"solid": "━━", "dashed": "╍╍", "dotted": "┄┄"}
         tones = self._theme.palette.tones
-        parts = []
-        for series in spec.series:
-            label = series.label.replace("&", "&amp;").replace("<", "&lt;")
-            parts.append(f'<span style="color:{tones[series.role].ink}">{strokes[series.dash]}</span>&nbsp;{label}')
+        parts = [
+            f'<span style="color:{tones[s.role].ink}">{_STROKES[s.dash]}</span>&nbsp;{escape(s.label)}'
+            for s in spec.series
+        ]
         self.key.setText("&nbsp;&nbsp; ".join(parts))
 
     def _recolour(self) -> None:
-        palette = self._theme.palette
-        self.plot.setBackground(palette.paper)
         colours = self.palette()
-        colours.setColor(self.backgroundRole(), QColor(palette.paper))
+        colours.setColor(self.backgroundRole(), QColor(self._theme.palette.paper))
         self.setPalette(colours)
-        for name in ("left", "bottom"):
-            axis = self.plot.getPlotItem().getAxis(name)
-            axis.setPen(pg.mkPen(palette.frame))
-            axis.setTextPen(pg.mkPen(palette.muted))
-        if self._spec is None:
-            return
-        self._label_axes(self._spec)
-        self._show_key(self._spec)
-        for series in self._spec.series:
-            self._curves[series.key].setPen(self._pen(series))
-        for mark in self._spec.marks:
-            self._colour_mark(mark, self._marks[mark.key], self._labels[mark.key])
+        if self._canvas is not None:
+            self._canvas.recolour()
+        if self._spec is not None:
+            self._show_key(self._spec)
 
-    def _clicked(self, event: object) -> None:
-        if event.double():  # type: ignore[attr-defined]
-            self._show_all()
+
+def _labels(spec: PlotSpec) -> list[str]:
+    return [series.label for series in spec.series]

@@ -20,9 +20,12 @@ class WaterfallView(QWidget):
     -------
     picked : str
         Key of the line that the user picked.
+    first_painted
+        The chart has been on the screen for the first time.
     """
 
     picked = Signal(str)
+    first_painted = Signal()
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -32,6 +35,7 @@ class WaterfallView(QWidget):
         self._hovered = ""
         self._hint = ""
         self._hits: list[tuple[str, QRectF]] = []
+        self._seen = False
         theme.changed.connect(self.update)
         self.setMouseTracking(True)
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
@@ -53,6 +57,12 @@ class WaterfallView(QWidget):
 
     def paintEvent(self, event: QPaintEvent) -> None:
         """Paint the chart."""
+        self._paint()
+        if not self._seen:
+            self._seen = True
+            self.first_painted.emit()
+
+    def _paint(self) -> None:
         palette = self._theme.palette
         area = QRectF(self.rect())
         with QPainter(self) as painter:

@@ -60,6 +60,7 @@ class Window(QMainWindow):
         self.shelf.cell_picked.connect(session.pick)
         self.shelf.removal_asked.connect(self._remove)
         self.waterfall.picked.connect(session.pick_line)
+        self.waterfall.first_painted.connect(self._complete, Qt.ConnectionType.QueuedConnection)
         self.table.line_picked.connect(session.pick_line)
         self.refresh()
 
@@ -123,6 +124,11 @@ class Window(QMainWindow):
             self._show_texts()
         elif not self._texts_due.isActive():
             self._texts_due.start()
+
+    def _complete(self) -> None:
+        """The window is on the screen: bring what was not worth waiting for."""
+        for plot in (self.jv_plot, self.gap_plot):
+            plot.canvas.update()
 
     def _show_charts(self, outcome: Outcome) -> None:
         picture, stale = outcome.picture, outcome.stale

@@ -1,0 +1,160 @@
+"""The pyqtgraph part of a live plot. Items are made once and only moved; ranges change only when they must."""
+
+from __future__ import annotations
+
+import numpy as np
+import pyqtgraph as pg
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QColor, QFont, QPen, QTransform
+from PySide6.QtWidgets import QGraphicsItem, QGraphicsSimpleTextItem, QWidget
+
+from app.figures.fonts import chart_font
+from app.figures.spec import Mark, PlotSpec, Series
+from app.workbench.theme import Theme
+
+_DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
+_SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
+_LABEL_PX = 12
+
+
+class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annotations
+    """Draws a `PlotSpec`. The wheel zooms and dragging moves; a double click shows the whole plot again."""
+
+    def __init__(self, title: str, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(parent)
+        self._theme = theme
+        self._spec: PlotSpec | None = None
+        self._ranges: tuple[tuple[float, float], tuple[float, float]] | None = None
+        self._curves: dict[str, pg.PlotCurveItem] = {}
+        self._marks: dict[str, pg.ScatterPlotItem] = {}
+        self._labels: dict[str, QGraphicsSimpleTextItem] = {}
+        self.setAccessibleName(title)
+        self._prepare()
+        self.recolour()
+
+    def _prepare(self) -> None:
+        item = self.getPlotItem()
+        item.setMenuEnabled(False)  # its menu offers exporters that do not draw what the screen shows
+        item.hideButtons()
+        item.disableAutoRange()
+        item.showGrid(x=True, y=True, alpha=0.15)
+        for name in ("left", "bottom"):
+            axis = item.getAxis(name)
+            axis.setCacheMode(QGraphicsItem.CacheMode.DeviceCoordinateCache)  # a grid costs 20 ms a paint without
+            axis.setStyle(tickFont=chart_font(11, hinted=True), hideOverlappingLabels=True)
+            axis.enableAutoSIPrefix(False)
+            axis.setTickDensity(1.6)
+        item.getAxis("left").setWidth(46)
+        self.setMinimumSize(180, 120)
+        self.scene().sigMouseClicked.connect(self._clicked)
+
+    def show_spec(self, spec: PlotSpec) -> None:
+        """Show a plot."""
+        previous, self._spec = self._spec, spec
+        if previous is None or previous.x_label != spec.x_label:
+            self._label_axes(spec)
+        if self._ranges != (spec.x_range, spec.y_range):
+            self._ranges = (spec.x_range, spec.y_range)
+            self._show_all()
+        for series in spec.series:
+            self._show_series(series)
+        for mark in spec.marks:
+            self._show_mark(mark)
+        self._hide_missing(spec)
+
+    def _show_all(self) -> None:
+        if self._ranges is not None:
+            (left, right), (bottom, top) = self._ranges
+            self.setRange(xRange=(left, right), yRange=(bottom, top), padding=0.0)
+
+    def _label_axes(self, spec: PlotSpec) -> None:
+        palette = self._theme.palette
+        style = {"color": palette.ink, "font-size": "9pt"}
+        item = self.getPlotItem()
+        item.getAxis("bottom").setLabel(spec.x_label, **style)
+        item.getAxis("left").setLabel(spec.y_label, **style)
+
+    def _show_series(self, series: Series) -> None:
+        curve = self._curves.get(series.key)
+        if curve is None:
+            curve = pg.PlotCurveItem(antialias=True, pen=self._pen(series))
+            self._curves[series.key] = curve
+            self.addItem(curve, ignoreBounds=True)
+        x, y = curve.getData()
+        if x is None or not (np.array_equal(x, series.x) and np.array_equal(y, series.y, equal_nan=True)):
+            curve.setData(series.x, series.y)
+        curve.setVisible(True)
+
+    def _pen(self, series: Series) -> QPen:
+        pen = QPen(QColor(self._theme.palette.tones[series.role].ink), 2.0, _DASHES[series.dash])
+        pen.setCosmetic(True)
+        return pen
+
+    def _show_mark(self, mark: Mark) -> None:
+        dot, label = self._marks.get(mark.key), self._labels.get(mark.key)
+        if dot is None or label is None:
+            dot = pg.ScatterPlotItem(size=9, symbol=_SYMBOLS[mark.symbol], pxMode=True)
+            label = QGraphicsSimpleTextItem()
+            label.setFlag(QGraphicsItem.GraphicsItemFlag.ItemIgnoresTransformations)
+            font = QFont(chart_font(_LABEL_PX, bold=True, hinted=True))
+            label.setFont(font)
+            self._marks[mark.key], self._labels[mark.key] = dot, label
+            self.addItem(dot, ignoreBounds=True)
+            self.getViewBox().addItem(label, ignoreBounds=True)
+            self._colour_mark(mark, dot, label)
+        x, y = dot.getData()
+        if len(x) == 0 or x[0] != mark.x or y[0] != mark.y:
+            dot.setData([mark.x], [mark.y])
+        if label.text() != mark.label:
+            label.setText(mark.label)
+        box = label.boundingRect()
+        right, left, above, below = 7.0, -box.width() - 7.0, -box.height() - 4.0, 4.0
+        shift = {
+            "n": (-box.width() / 2, above - 2),
+            "s": (-box.width() / 2, below + 3),
+            "ne": (right, above),
+            "nw": (left, above),
+            "se": (right, below),
+            "sw": (left, below),
+        }[mark.side]
+        label.setTransform(QTransform.fromTranslate(*shift))
+        label.setPos(mark.x, mark.y)
+        dot.setVisible(True)
+        label.setVisible(True)
+
+    def _hide_missing(self, spec: PlotSpec) -> None:
+        series, marks = {s.key for s in spec.series}, {m.key for m in spec.marks}
+        for key, curve in self._curves.items():
+            if key not in series:
+                curve.setVisible(False)
+        for key, dot in self._marks.items():
+            if key not in marks:
+                dot.setVisible(False)
+                self._labels[key].setVisible(False)
+
+    def _colour_mark(self, mark: Mark, dot: pg.ScatterPlotItem, label: QGraphicsSimpleTextItem) -> None:
+        palette = self._theme.palette
+        ink = palette.tones[mark.role].ink
+        dot.setPen(pg.mkPen(ink, width=2))
+        dot.setBrush(pg.mkBrush(ink if mark.filled else palette.paper))
+        label.setBrush(QColor(ink))
+
+    def recolour(self) -> None:
+        """Take the theme's colours."""
+        palette = self._theme.palette
+        self.setBackground(palette.paper)
+        for name in ("left", "bottom"):
+            axis = self.getPlotItem().getAxis(name)
+            axis.setPen(pg.mkPen(palette.frame))
+            axis.setTextPen(pg.mkPen(palette.muted))
+        if self._spec is None:
+            return
+        self._label_axes(self._spec)
+        for series in self._spec.series:
+            self._curves[series.key].setPen(self._pen(series))
+        for mark in self._spec.marks:
+            self._colour_mark(mark, self._marks[mark.key], self._labels[mark.key])
+
+    def _clicked(self, event: object) -> None:
+        if event.double():  # type: ignore[attr-defined]
+            self._show_all()
