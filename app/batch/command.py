@@ -53,8 +53,10 @@ def run(argv: Sequence[str]) -> int:
 
 
 def _run(options: Options) -> int:
-    table = load_table(options.cells)
-    extras = check_header(table.columns, options.cells.name)
+    # "." has no name to put into a sentence.
+    cells = options.cells if options.cells.name else options.cells.resolve()
+    table = load_table(cells)
+    extras = check_header(table.columns, cells.name)
     _prepare(options)
     tally = write_tables(options.into, table, extras, _watched(table, options))
     charts = 0
@@ -77,8 +79,6 @@ def _prepare(options: Options) -> None:
     folder = options.into
     first = folder / FILES[0]
     try:
-        if folder.exists() and not folder.is_dir():
-            raise NotADirectoryError(errno.ENOTDIR, os.strerror(errno.ENOTDIR))
         folder.mkdir(parents=True, exist_ok=True)
         for name in FILES:
             target = folder / name
@@ -86,6 +86,8 @@ def _prepare(options: Options) -> None:
                 raise not_written(target, "the table of cells itself has that name there", "choose another folder")
     except WriteError:
         raise
+    except FileExistsError as fault:
+        raise refused_by_system(first, NotADirectoryError(errno.ENOTDIR, os.strerror(errno.ENOTDIR))) from fault
     except OSError as fault:
         raise refused_by_system(first, fault) from fault
     except ValueError as fault:
