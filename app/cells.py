@@ -6,8 +6,8 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
 
+from app.cell_columns import check_header, not_available
 from app.files.numbers import NumberError
-from app.files.table_error import TableError
 from app.files.table_output import write_table
 from app.files.tables import Table
 from app.session.fields import FIELDS
@@ -57,37 +57,39 @@ def read_row(cells: Mapping[str, str], decimal_comma: bool = False) -> ReadRow:
     )
 
 
+def note_in(cells: Mapping[str, str]) -> str:
+    """The free text of a row."""
+    return (cells.get("note") or cells.get("story") or "").strip()
+
+
 def entry_of(row: ReadRow, note: str = "") -> CellEntry:
     """A shelf entry of a row; its identity is given when it is put on the shelf."""
     return CellEntry(0, row.name, row.group, row.spectrum, row.values, note)
 
 
-def entries_from(table: Table) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
+def entries_from(table: Table, source: str) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
     """Shelf entries of a table of cells.
 
     Parameters
     ----------
     table : Table
         As read from a file. A column "note" (or "story") becomes the note.
+    source : str
+        What to call the table.
 
     Returns
     -------
     entries : tuple of CellEntry
         One for each row with a name. Numbers that could not be read stay as typed, to be mended in the window.
     left_out : tuple of str
-        One sentence for each row that could not be taken.
+        One sentence for each row, or part of a row, that could not be taken.
 
     Raises
     ------
     TableError
-        When the table has no column "name", or none of the columns of a cell.
+        When a column is missing or looks like a known quantity in another spelling or unit.
     """
-    known = [field.column for field in FIELDS if field.column in table.columns]
-    if "name" not in table.columns or not known:
-        raise TableError(
-            "This is no table of cells: it needs a column name and columns such as gap_eV, voc_V, jsc_mA_cm2 and "
-            f"ff_pct; it has {', '.join(table.columns[:8])}."
-        )
+    check_header(table.columns, source)
     entries, left_out = [], []
     for index, (row, line) in enumerate(zip(table.rows, table.line_numbers, strict=True)):
         fault = table.row_problems.get(index, "")
@@ -98,7 +100,8 @@ def entries_from(table: Table) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
         if fault:
             left_out.append(f"Line {line}: {fault}")
         else:
-            entries.append(entry_of(read, (cells.get("note") or cells.get("story") or "").strip()))
+            entries.append(entry_of(read, note_in(cells)))
+            left_out += [f"Line {line}: {sentence}" for _, sentence in not_available(cells)]
     return tuple(entries), tuple(left_out)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import unicodedata
 from dataclasses import dataclass
 
 from app.files.numbers import write_number
@@ -15,6 +16,17 @@ from physics.quantities import Quantities, meaning
 
 MINUS = "−"
 THIN = "\u2009"  # between a number and its unit
+
+
+def shown_name(name: str) -> str:
+    """A name as it may stand inside a sentence: without control signs, and kept from turning what is beside it.
+
+    Signs that reverse the writing would print "30.6" as "6.03"; a name in a script from right to left is set apart.
+    """
+    plain = "".join(c if c.isprintable() or unicodedata.category(c) == "Zs" else " " for c in name)
+    plain = " ".join(plain.split())
+    turns = any(unicodedata.bidirectional(c) in ("R", "AL", "AN") for c in plain)
+    return f"\u2068{plain}\u2069" if turns else plain
 
 
 def unbroken(text: str) -> str:

@@ -29,15 +29,15 @@ def log_mean(a: ArrayLike, b: ArrayLike) -> Array:
 
     Notes
     -----
-    Computed as b·t/ln(1 + t) with b the lesser of the two and t = (a − b)/b, which loses no digits where a is close
+    Computed as b·t/ln(1 + t) with b the lesser of the two, a the greater, and t = (a − b)/b, which loses no digits where a is close
     to b, nor where they are far apart.
     """
     first, second = np.asarray(a, dtype=float), np.asarray(b, dtype=float)
-    a, b = np.maximum(first, second), np.minimum(first, second)
-    valid = b > 0
-    t = np.where(valid, a - b, 0.0) / np.where(valid, b, 1.0)
+    greater, lesser = np.maximum(first, second), np.minimum(first, second)
+    valid = lesser > 0
+    t = np.where(valid, greater - lesser, 0.0) / np.where(valid, lesser, 1.0)
     same = t == 0.0
-    mean = b * np.where(same, 1.0, t) / np.where(same, 1.0, np.log1p(np.where(same, 1.0, t)))
+    mean = lesser * np.where(same, 1.0, t) / np.where(same, 1.0, np.log1p(np.where(same, 1.0, t)))
     return np.where(valid, mean, np.nan)
 
 

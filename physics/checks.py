@@ -57,7 +57,18 @@ def _diode(ledger: Ledger) -> Diode:
     return Diode.through(cell.voc, cell.jsc, cell.temperature, 1.0, rs, rsh)
 
 
+def _not_finite(ledger: Ledger) -> Mask:
+    cell = ledger.cell
+    given = np.isfinite(cell.gap * cell.voc * cell.jsc * cell.ff * cell.temperature)
+    diode = _diode(ledger)
+    return given & diode.drop_below_voc & diode.shunt_above_line & ~np.isfinite(ledger.closure)
+
+
 CHECKS: tuple[Check, ...] = (
+    Check(
+        "not_finite", "jsc", Severity.IMPOSSIBLE, _not_finite,
+        "The ledger of these figures is no finite number: one of them is far too small or too large.",
+    ),
     Check(
         "voc_above_limit", "voc", Severity.IMPOSSIBLE,
         lambda s: s.cell.voc > s.limit.voc * _ROUNDING,

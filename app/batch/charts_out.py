@@ -6,11 +6,11 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from app.batch.console import Progress
-from app.batch.file_names import chart_names
 from app.batch.options import ChartKind
-from app.cells import entry_of, read_row
+from app.cells import entry_of, note_in, read_row
 from app.figures.charts import waterfall_of
 from app.figures.export import PRESETS, ensure_gui, render
+from app.files.file_names import chart_names
 from app.files.tables import Table
 from app.files.writer import write_file
 from app.session.appraisal import appraise
@@ -62,5 +62,4 @@ def write_charts(folder: Path, table: Table, computed: Sequence[int], choices: C
 
 def _entry(table: Table, index: int) -> CellEntry:
     cells = dict(zip(table.columns, table.rows[index], strict=True))
-    note = (cells.get("note") or cells.get("story") or "").strip()
-    return entry_of(read_row(cells, table.decimal_comma), note)
+    return entry_of(read_row(cells, table.decimal_comma), note_in(cells))

@@ -9,10 +9,10 @@ from collections.abc import Iterator, Sequence
 from pathlib import Path
 
 from app.batch.console import Progress, say
-from app.batch.header import check_header
 from app.batch.options import HELP_FLAGS, Options, UsageError, help_text, read_options
 from app.batch.portions import Portion, portions_of
 from app.batch.tables_out import FILES, PROBLEMS_FILE, Tally, renamed, write_tables
+from app.cell_columns import check_header
 from app.figures.errors import FigureError
 from app.files.quoting import quote, quote_end
 from app.files.table_error import TableError

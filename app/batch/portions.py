@@ -35,7 +35,6 @@ RESULTS = (
     "j0_rad_mA_cm2",
     "closure_mW_cm2",
 )
-_NOT_FINITE = "The ledger of these figures is no finite number: one of them is far too small or too large."
 
 
 @dataclass(frozen=True, eq=False)
@@ -92,12 +91,11 @@ def work_out(rows: list[Row], attribution: Attribution) -> Portion:
     for light, places in lights.values():
         where = np.array(places, dtype=np.intp)
         columns = {field.key: portion.inputs[where, k] for k, field in enumerate(FIELDS)}
-        # What overflows here ends in a number that is not finite, and `_refuse_not_finite` tells of it.
+        # What overflows here ends in a number that is not finite, and the check `not_finite` tells of it.
         with np.errstate(all="ignore"):
             ledger = ledger_of(Cell.of(**physics_values(columns)), light, attribution)
             _keep(portion, where, ledger)
             _check(rows, where, ledger)
-    _refuse_not_finite(portion)
     return portion
 
 
@@ -148,12 +146,3 @@ def _check(rows: list[Row], where: Indices, ledger: Ledger) -> None:
         for index in np.flatnonzero(mask).tolist():
             problem = Problem(check.field, check.severity, check_sentence(check, ledger, index))
             rows[where[index]].problems.append(problem)
-
-
-def _refuse_not_finite(portion: Portion) -> None:
-    """No row may reach a result with a number that is none, whatever the fields and checks let through."""
-    finite = np.isfinite(portion.loss) & np.isfinite(portion.delta)
-    sound = finite.all(axis=1) & np.isfinite(portion.results).all(axis=1)
-    for place in np.flatnonzero(~sound).tolist():
-        if not portion.rows[place].refused:
-            portion.rows[place].refuse("", _NOT_FINITE)

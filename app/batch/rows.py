@@ -6,7 +6,7 @@ import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 
-from app.batch.header import EQE_FILE, GROUP, JV_FILE, NAME, REFERENCE, SPECTRUM, UNCERTAINTY
+from app.cell_columns import GROUP, NAME, SPECTRUM, not_available
 from app.cells import ReadRow, read_row
 from app.files.quoting import quote
 from app.files.tables import Table
@@ -15,7 +15,6 @@ from app.session.fields import FIELD_BY_KEY
 from physics.checks import Severity
 from physics.spectrum import Illumination
 
-STEP = "step"
 _NAMES_ITS_LINE = re.compile(r"Lines? [0-9]")
 _GAP = FIELD_BY_KEY["gap"]
 
@@ -66,7 +65,6 @@ def read_rows(table: Table) -> Iterator[Row]:
     reads, and names that occur twice, are looked at here.
     """
     first_lines: dict[tuple[str, str], int] = {}
-    unread = [column for column in table.columns if _not_read_yet(column)]
     for index, (texts, line) in enumerate(zip(table.rows, table.line_numbers, strict=True)):
         cells = dict(zip(table.columns, texts, strict=True))
         if index in table.row_problems:
@@ -79,15 +77,8 @@ def read_rows(table: Table) -> Iterator[Row]:
         light, light_fault = _light_of(read.spectrum)
         row = Row(index, line, read, light)
         _check_name(row, first_lines)
-        reference = cells.get(REFERENCE, "").strip()
-        if reference.lower() not in ("", STEP):
-            row.refuse(
-                REFERENCE,
-                f"The reference {quote(reference)} is not available in this version: leave it empty or write {STEP}.",
-            )
-        for column in unread:
-            if cells[column].strip():
-                row.refuse(column, _not_read_yet(column))
+        for column, sentence in not_available(cells):
+            row.refuse(column, sentence)
         row.problems.extend(field_problems(read.values))
         if light_fault:
             row.refuse(SPECTRUM, light_fault)
@@ -123,14 +114,3 @@ def _check_name(row: Row, first_lines: dict[tuple[str, str], int]) -> None:
             NAME,
             f"The name {quote(name)} stands already in line {first}: give every cell of a group a name of its own.",
         )
-
-
-def _not_read_yet(column: str) -> str:
-    """Sentence about a column whose contents this version does not read, or an empty text."""
-    if column == JV_FILE:
-        return f"J–V files are not read by this version: leave {column} empty and give Voc, Jsc and FF."
-    if column == EQE_FILE:
-        return f"EQE files are not read by this version: leave {column} empty and give the gap."
-    if column.startswith(UNCERTAINTY):
-        return f"Uncertainties are not read by this version: leave {column} empty."
-    return ""

@@ -25,9 +25,9 @@ from pathlib import Path
 
 import numpy as np
 
-from app.batch.header import GROUP, NAME, REFERENCE, SPECTRUM
 from app.batch.portions import RESULTS, Portion
-from app.batch.rows import STEP, located
+from app.batch.rows import located
+from app.cell_columns import GROUP, NAME, REFERENCE, SPECTRUM, STEP
 from app.files.tables import Cell, Table, write_columns
 from app.session.fields import FIELD_BY_KEY, FIELDS
 from app.wording import basis_text

@@ -9,7 +9,17 @@ import numpy as np
 from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
 from app.session.appraisal import light_named
 from app.session.outcome import Picture
-from app.wording import basis_text, conventions_text, delta_text, inputs_text, loss_text, percent, unbroken, with_unit
+from app.wording import (
+    basis_text,
+    conventions_text,
+    delta_text,
+    inputs_text,
+    loss_text,
+    percent,
+    shown_name,
+    unbroken,
+    with_unit,
+)
 from physics.ledger import Entry, Ledger, entries_of
 from physics.lines import Basis, Family, Section
 
@@ -47,8 +57,12 @@ def caption_of(picture: Picture) -> tuple[str, ...]:
     light = light_named(entry.spectrum).title
     lines = [f"{inputs_text(entry)} · {unbroken(light)}", conventions_text(picture.choices)]
     if entry.note:
-        lines.append(entry.note)
+        lines.append(shown_name(entry.note))
     return tuple(lines)
+
+
+def _name(picture: Picture) -> str:
+    return shown_name(picture.entry.name) or "Unnamed cell"
 
 
 def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
@@ -64,8 +78,8 @@ def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
     ledger = picture.ledger
     incident = float(ledger.limit.incident)
     limit, cell = float(ledger.limit.efficiency), float(ledger.efficiency)
-    steps = _steps(picture.entry.name, ledger)
-    name = picture.entry.name
+    name = _name(picture)
+    steps = _steps(name, ledger)
     families = [f for f in _FAMILY_NAMES if any(e.line.family is f for e in ledger.entries)]
     return WaterfallSpec(
         title=f"{name}: {percent(cell, 1)} of a possible {percent(limit, 1)}",
@@ -161,7 +175,7 @@ def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
     caption = caption_of(picture)
     if drawn:
-        series.append(Series("cell", picture.entry.name, cell_curve.voltage, cell_curve.current, "cell"))
+        series.append(Series("cell", _name(picture), cell_curve.voltage, cell_curve.current, "cell"))
         marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
         note = (
             f"Cell: one-diode curve drawn through Voc, Jsc and FF (n = {cell_curve.ideality:.3g}), not a measured sweep"
@@ -171,7 +185,7 @@ def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
         marks.append(Mark("jsc", "Jsc", 0.0, float(ledger.cell.jsc), "cell"))
         note = "Cell: no diode curve has so low a fill factor, so only Voc and Jsc are shown"
     return PlotSpec(
-        title=f"{picture.entry.name}: current density against voltage",
+        title=f"{_name(picture)}: current density against voltage",
         x_label="Voltage (V)",
         y_label="Current density (mA cm⁻²)",
         x_range=round_range(0.0, 1.02 * max(float(limit.voc), float(ledger.cell.voc))),
@@ -198,7 +212,7 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
     best = float(gaps.gap[np.argmax(curve)])
     outside: Side = "ne" if gap > best else "nw"  # the curve falls away from its best gap: texts beside it stay clear
     return PlotSpec(
-        title=f"{picture.entry.name}: efficiency against the gap",
+        title=f"{_name(picture)}: efficiency against the gap",
         x_label="Gap (eV)",
         y_label="Efficiency (%)",
         x_range=(0.4, 3.0) if 0.4 <= gap <= 3.0 else round_range(min(gap, 0.4), max(gap, 3.0)),
@@ -208,7 +222,7 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
             Mark(
                 "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
             ),
-            Mark("cell", f"{picture.entry.name} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
+            Mark("cell", f"{_name(picture)} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
         caption=caption_of(picture),
         stale=STALE if stale else "",

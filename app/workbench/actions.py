@@ -13,6 +13,7 @@ from PySide6.QtWidgets import QComboBox, QFileDialog, QLabel, QMenu, QToolBar
 
 from app.cells import cell_table, entries_from
 from app.figures.charts import waterfall_of
+from app.files.file_names import safe_stem
 from app.files.table_error import TableError
 from app.files.tables import load_table
 from app.files.write_error import WriteError
@@ -195,7 +196,7 @@ class Actions(QObject):
     def open_table(self, path: Path) -> None:
         """Put the cells of a table on the shelf, and tell what could not be taken."""
         try:
-            entries, left_out = entries_from(load_table(path))
+            entries, left_out = entries_from(load_table(path), path.name)
         except TableError as fault:
             self._say(str(fault), lasting=True)
             return
@@ -227,7 +228,8 @@ class Actions(QObject):
     def _ask_save_ledger(self) -> None:
         picture = self._window.outcomes.current().picture
         if picture is not None:
-            self._ask_save("Save the ledger", f"{picture.entry.name} ledger.csv", lambda: ledger_csv(picture))
+            name = f"{safe_stem(picture.entry.name)} ledger.csv"
+            self._ask_save("Save the ledger", name, lambda: ledger_csv(picture))
 
     def _copy_table(self) -> None:
         picture = self._window.outcomes.current().picture

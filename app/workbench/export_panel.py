@@ -26,9 +26,11 @@ from app.figures.errors import FigureError
 from app.figures.export import Background, Kind, image, render
 from app.figures.presets import PRESETS
 from app.figures.spec import PlotSpec, WaterfallSpec
+from app.files.file_names import safe_stem
 from app.files.write_error import WriteError
 from app.files.writer import write_file
 from app.session.outcome import Outcomes, Picture
+from app.wording import shown_name
 
 Spec = WaterfallSpec | PlotSpec
 CHARTS: dict[str, tuple[str, Callable[[Picture, bool], Spec]]] = {
@@ -43,7 +45,7 @@ _KINDS: tuple[tuple[str, Kind], ...] = (("PNG picture", "png"), ("SVG drawing", 
 def chart_of(picture: Picture, chart: str, title: str = "") -> Spec:
     """The description of one chart of a cell, under its own title or another."""
     spec = CHARTS[chart][1](picture, False)
-    return replace(spec, title=title) if title.strip() else spec
+    return replace(spec, title=shown_name(title)) if title.strip() else spec
 
 
 def copy_image(picture: QImage) -> None:
@@ -51,12 +53,6 @@ def copy_image(picture: QImage) -> None:
     data = QMimeData()
     data.setImageData(picture)
     QGuiApplication.clipboard().setMimeData(data)
-
-
-def file_stem(name: str, chart: str) -> str:
-    """A file name that every system takes, from the name of a cell."""
-    plain = "".join(c if c.isalnum() or c in "-_ " else "-" for c in name).strip() or "cell"
-    return f"{plain[:80]} {chart}"
 
 
 class ExportPanel(QDialog):
@@ -159,7 +155,7 @@ class ExportPanel(QDialog):
         if outcome.picture is None:
             return
         kind: str = self.kind.currentData()
-        stem = file_stem(outcome.picture.entry.name, self.chart.currentData())
+        stem = f"{safe_stem(outcome.picture.entry.name)} {self.chart.currentData()}"
         name, _ = QFileDialog.getSaveFileName(
             self, "Save picture", str(self._folder / f"{stem}.{kind}"), f"{self.kind.currentText()} (*.{kind})"
         )

@@ -13,7 +13,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from PySide6.QtGui import QImage
 
-from app.batch.file_names import chart_names, safe_stem
+from app.files.file_names import chart_names, safe_stem
 from app.files.windows_names import windows_trouble
 from tests.batch.command_line import GOOD, HEADER, ROOT, Command, in_process_of_its_own
 

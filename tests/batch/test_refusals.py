@@ -254,7 +254,7 @@ REFUSED: list[tuple[str, str, list[tuple[str, str]]]] = [
         _instead(gap="0.4", voc="5e-324", jsc="5e-324", ff="40"),
         [
             (
-                "",
+                "jsc_mA_cm2",
                 "Line 3: The ledger of these figures is no finite number: one of them is far too small or too large.",
             )
         ],

@@ -105,7 +105,7 @@ def test_same_as_the_window(command: Command, attribution: Attribution) -> None:
     """
     choices = Choices(attribution=attribution)
     done = command(DEMO, "--attribution", attribution)
-    entries, _ = entries_from(load_table(DEMO))
+    entries, _ = entries_from(load_table(DEMO), DEMO.name)
     for entry, summary in zip(entries, done.rows("summary"), strict=True):
         picture = picture_of(appraise(entry, choices), choices)
         assert picture is not None
@@ -270,7 +270,7 @@ def test_numbers_read_back_bit_for_bit(
         present = portion.form[0] >= 0
         assert [float(row["loss_mW_cm2"]) for row in written] == portion.loss[0, present].tolist()
         assert [float(summary[column]) for column in RESULTS] == portion.results[0].tolist()
-        (entry,), _ = entries_from(load_table(cells))
+        (entry,), _ = entries_from(load_table(cells), cells.name)
         ledger = appraise(entry, Choices()).ledger
         assert ledger is not None
         # numpy's exp for arrays and for single numbers may differ by an ulp, which J0 ~ exp(-Eg/kT) passes on.

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from app.batch.header import KNOWN, REQUIRED, check_header, meant_by
+from app.cell_columns import KNOWN, REQUIRED, check_header, meant_by
 from app.files.table_error import TableError
 from app.session.fields import FIELDS
 

@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from types import MappingProxyType
 
 from app.files.quoting import quote
@@ -18,6 +18,7 @@ from app.session.fields import FIELD_BY_COLUMN, FIELDS
 
 NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE = "name", "group", "spectrum", "reference", "jv_file", "eqe_file"
 UNCERTAINTY = "u_"
+STEP = "step"
 TEXT_COLUMNS = (NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE)
 KNOWN = frozenset((*TEXT_COLUMNS, *FIELD_BY_COLUMN))
 REQUIRED = (NAME, *(field.column for field in FIELDS if field.required))
@@ -154,3 +155,34 @@ def _without_unit(column: str) -> str:
 
 def _listed(names: list[str]) -> str:
     return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
+
+
+def not_available(cells: Mapping[str, str]) -> list[tuple[str, str]]:
+    """Columns of a row that ask for what this version does not do, each with a sentence.
+
+    Parameters
+    ----------
+    cells : mapping of str to str
+        Text by column name. Empty cells ask for nothing.
+    """
+    found = []
+    reference = cells.get(REFERENCE, "").strip()
+    if reference.lower() not in ("", STEP):
+        sentence = f"The reference {quote(reference)} is not available in this version: leave it empty or write {STEP}."
+        found.append((REFERENCE, sentence))
+    for column, text in cells.items():
+        sentence = _not_read_yet(column) if text.strip() else ""
+        if sentence:
+            found.append((column, sentence))
+    return found
+
+
+def _not_read_yet(column: str) -> str:
+    """Sentence about a column whose contents this version does not read, or an empty text."""
+    if column == JV_FILE:
+        return f"J–V files are not read by this version: leave {column} empty and give Voc, Jsc and FF."
+    if column == EQE_FILE:
+        return f"EQE files are not read by this version: leave {column} empty and give the gap."
+    if column.startswith(UNCERTAINTY):
+        return f"Uncertainties are not read by this version: leave {column} empty."
+    return ""

@@ -1,0 +1,90 @@
+"""The plausibility checks: each is tripped by the cell it is meant for, and by no other."""
+
+from string import Formatter
+
+import numpy as np
+import pytest
+
+from physics.cell import Cell
+from physics.checks import CHECKS, Check, Severity, failed
+from physics.ledger import Ledger, ledger_of
+from physics.limit import detailed_balance_limit
+from physics.quantities import Quantities
+from physics.spectrum import reference_spectrum
+
+from .published import AUGER_LIMITED_SILICON, CERTIFIED
+
+AM15G = reference_spectrum("am15g")
+SOUND = {"gap": 1.5, "voc": 1.1, "jsc": 24.0, "ff": 0.78, "ideality": 1.4, "rs": 1.0, "rsh": 3000.0}
+
+#: A cell that trips the check, and one a little to the other side of it. The limit of 1.5 eV at 100 mW cm⁻² is
+#: 28.98 mA cm⁻², 1.233 V, 28.98 · 1.233 · 0.900 mW cm⁻² (recomputed in test_limit_quadrature.py).
+CASES = {
+    "not_finite": ({"ere": 0.0}, {"ere": 0.006}),
+    "voc_above_limit": ({"voc": 1.24}, {"voc": 1.22}),
+    "power_above_limit": ({"jsc": 35.0, "voc": 1.2, "ff": 0.9}, {"jsc": 26.0, "voc": 1.2, "ff": 0.9}),
+    "rs_too_large": ({"rs": 46.0}, {"rs": 45.0}),  # Voc/Jsc is 45.83 Ω cm²
+    "rsh_too_small": ({"rs": 0.0, "rsh": 45.0}, {"rs": 0.0, "rsh": 46.0}),
+    "jsc_above_limit": ({"jsc": 29.1}, {"jsc": 28.9}),
+    "voc_above_radiative": ({"voc": 1.225, "jsc": 16.0}, {"voc": 1.205, "jsc": 16.0}),
+    "ere_contradicts_voc": ({"ere": 1e-5}, {"ere": 0.006}),
+    "ff_above_ideal": ({"ff": 0.90, "ideality": np.nan}, {"ff": 0.88, "ideality": np.nan}),
+    "ff_below_quarter": ({"ff": 0.25}, {"ff": 0.26}),
+    "pseudo_ff_below_ff": ({"pseudo_ff": 0.77}, {"pseudo_ff": 0.79}),
+}
+
+
+def _ledger(changes: dict[str, float]) -> Ledger:
+    return ledger_of(Cell.of(**(SOUND | changes)), AM15G)
+
+
+def _keys(ledger: Ledger) -> set[str]:
+    return {check.key for check, _ in failed(ledger)}
+
+
+def test_a_sound_cell_passes() -> None:
+    assert failed(_ledger({})) == []
+
+
+def test_every_check_has_its_case() -> None:
+    assert set(CASES) == {check.key for check in CHECKS}
+    assert len(CHECKS) == len(CASES)
+
+
+@pytest.mark.parametrize("key", CASES)
+def test_each_check_on_either_side(key: str) -> None:
+    bad, good = CASES[key]
+    assert key in _keys(_ledger(bad))
+    assert key not in _keys(_ledger(good))
+
+
+def test_masks_are_by_cell() -> None:
+    ledger = ledger_of(Cell.of(**{k: v for k, v in SOUND.items() if k != "voc"}, voc=[1.1, 1.3, np.nan, 1.1]), AM15G)
+    hits = {check.key: mask for check, mask in failed(ledger)}
+    np.testing.assert_array_equal(hits["voc_above_limit"], [False, True, False, False])
+
+
+@pytest.mark.parametrize("check", CHECKS, ids=lambda check: check.key)
+def test_messages_name_quantities_and_fields(check: Check) -> None:
+    names = {name for _, name, _, _ in Formatter().parse(check.message) if name is not None}
+    assert names <= set(Quantities.__dataclass_fields__)
+    assert check.field in Cell.__dataclass_fields__
+    text = check.message.format(**dict.fromkeys(names, 1.23456))
+    assert text.endswith(".")
+    assert "{" not in text
+
+
+def test_a_cell_at_its_limit_is_not_above_it() -> None:
+    gap = np.linspace(0.5, 3.0, 300)
+    limit = detailed_balance_limit(gap, 298.15, AM15G, 100.0)
+    ledger = ledger_of(Cell.of(gap=gap, voc=limit.voc, jsc=limit.jsc, ff=limit.ff), AM15G)
+    assert _keys(ledger) == set()
+
+
+def test_certified_cells_pass_and_auger_limited_silicon_is_only_remarked_on() -> None:
+    for cell in CERTIFIED:
+        ledger = ledger_of(Cell.of(gap=cell.gap, voc=cell.voc, jsc=cell.jsc, ff=cell.ff / 100), AM15G)
+        assert _keys(ledger) == set(), cell.title
+    voc, jsc, ff, _ = AUGER_LIMITED_SILICON
+    hits = failed(ledger_of(Cell.of(gap=1.12, voc=voc, jsc=jsc, ff=ff), AM15G))
+    assert [(check.key, check.severity) for check, _ in hits] == [("ff_above_ideal", Severity.DOUBTFUL)]
