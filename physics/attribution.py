@@ -29,8 +29,8 @@ def log_mean(a: ArrayLike, b: ArrayLike) -> Array:
 
     Notes
     -----
-    Computed as b·t/ln(1 + t) with b the lesser of the two, a the greater, and t = (a − b)/b, which loses no digits where a is close
-    to b, nor where they are far apart.
+    Computed as b·t/ln(1 + t) with b the lesser of the two, a the greater, and t = (a − b)/b, which loses no digits
+    where a is close to b, nor where they are far apart.
     """
     first, second = np.asarray(a, dtype=float), np.asarray(b, dtype=float)
     greater, lesser = np.maximum(first, second), np.minimum(first, second)

@@ -10,7 +10,8 @@ README = (ROOT / "README.md").read_text(encoding="utf-8")
 
 
 def _commands() -> list[str]:
-    return [line for block in re.findall(r"```(?:sh|bat)\n(.*?)```", README, re.S) for line in block.splitlines() if line]
+    blocks = re.findall(r"```(?:sh|bat)\n(.*?)```", README, re.S)
+    return [line for block in blocks for line in block.splitlines() if line]
 
 
 def test_continuous_integration_runs_the_readmes_test_command() -> None:
