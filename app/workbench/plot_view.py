@@ -49,9 +49,9 @@ class PlotView(QWidget):
         if self._canvas is None:
             from app.workbench.plot_canvas import PlotCanvas
 
-            self._canvas = PlotCanvas(self._title, self._theme)
-            self._canvas.setVisible(self._spec is not None)
+            self._canvas = PlotCanvas(self._title, self._theme, self)  # without a parent it would flash as a window
             self._column.insertWidget(2, self._canvas, 1000)
+            self._canvas.setVisible(self._spec is not None)
             if self._spec is not None:
                 self._canvas.show_spec(self._spec)
         return self._canvas
