@@ -12,7 +12,6 @@ from enum import Enum
 
 import numpy as np
 
-from physics.diode import Diode
 from physics.ledger import Ledger
 from physics.units import Mask
 
@@ -50,17 +49,10 @@ class Check:
     message: str
 
 
-def _diode(ledger: Ledger) -> Diode:
-    cell = ledger.cell
-    rs = np.where(np.isnan(cell.rs), 0.0, cell.rs)
-    rsh = np.where(np.isnan(cell.rsh), np.inf, cell.rsh)
-    return Diode.through(cell.voc, cell.jsc, cell.temperature, 1.0, rs, rsh)
-
-
 def _not_finite(ledger: Ledger) -> Mask:
     cell = ledger.cell
     given = np.isfinite(cell.gap * cell.voc * cell.jsc * cell.ff * cell.temperature)
-    diode = _diode(ledger)
+    diode = ledger.diode
     return given & diode.drop_below_voc & diode.shunt_above_line & ~np.isfinite(ledger.closure)
 
 
@@ -82,12 +74,12 @@ CHECKS: tuple[Check, ...] = (
     ),
     Check(
         "rs_too_large", "rs", Severity.IMPOSSIBLE,
-        lambda s: ~np.isnan(s.cell.rs) & ~_diode(s).drop_below_voc,
+        lambda s: ~np.isnan(s.cell.rs) & ~s.diode.drop_below_voc,
         "Rs × Jsc would be more than Voc: no diode curve can do that. Give Rs in Ω cm², not in Ω.",
     ),
     Check(
         "rsh_too_small", "rsh", Severity.IMPOSSIBLE,
-        lambda s: ~np.isnan(s.cell.rsh) & ~_diode(s).shunt_above_line,
+        lambda s: ~np.isnan(s.cell.rsh) & ~s.diode.shunt_above_line,
         "So low an Rsh would draw more than Jsc before Voc is reached: no diode curve can do that. "
         "Give Rsh in Ω cm², not in Ω.",
     ),
@@ -131,4 +123,4 @@ def failed(ledger: Ledger) -> list[tuple[Check, Mask]]:
     """Checks that at least one cell fails, with the mask of the cells concerned (shape of the cells)."""
     with np.errstate(invalid="ignore"):
         hits = ((check, check.hit(ledger)) for check in CHECKS)
-        return [(check, mask) for check, mask in hits if np.any(mask)]
+        return [(check, mask) for check, mask in hits if mask.any()]

@@ -48,7 +48,7 @@ def wright_omega(y: ArrayLike) -> Array:
     for _ in range(8):
         step = w * (y - np.log(w) - w) / (1.0 + w)
         w = np.maximum(w + step, w * 0.1)
-        if not np.any(np.abs(step) > 1e-15 * w):
+        if not (np.abs(step) > 1e-15 * w).any():
             break
     return w
 
@@ -201,7 +201,7 @@ class Diode:
             newton = u - gain / bend
             better = np.where((newton >= low) & (newton <= high), newton, 0.5 * (low + high))
             moved, u = np.abs(better - u), better
-            if not np.any(moved > _TOLERANCE * self.voc):
+            if not (moved > _TOLERANCE * self.voc).any():
                 break
         grown = amplitude * np.exp((u - self.voc) / self.scale)
         j = amplitude - grown + (self.voc - u) * conductance
@@ -248,7 +248,7 @@ def matching_ideality(
     low = np.full(ff_.shape, np.log(0.05))
     high = np.full(ff_.shape, np.log(2000.0))
     grid = np.linspace(0.0, 1.0, 64)
-    plain = not (np.any(rs_ > 0) or np.any(np.isfinite(rsh_)))
+    plain = not ((rs_ > 0).any() or np.isfinite(rsh_).any())
     for narrowing in range(2):
         ideality = np.exp(low + (high - low) * grid)
         if plain:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
 from physics.attribution import Attribution
 from physics.cell import Cell
+from physics.diode import Diode
 from physics.limit import Faces, Limit, detailed_balance_limit
 from physics.lines import LINES, Form, Line, Section
 from physics.quantities import Quantities, quantities_of
@@ -78,6 +80,14 @@ class Ledger:
                 return entry
         raise KeyError(key)
 
+    @cached_property
+    def diode(self) -> Diode:
+        """The cells' curves with the resistances that are known, and n = 1."""
+        cell = self.cell
+        rs = np.where(np.isnan(cell.rs), 0.0, cell.rs)
+        rsh = np.where(np.isnan(cell.rsh), np.inf, cell.rsh)
+        return Diode.through(cell.voc, cell.jsc, cell.temperature, 1.0, rs, rsh)
+
     @property
     def efficiency(self) -> Array:
         """Power of the cell over incident power."""
@@ -124,7 +134,7 @@ def _work_out(line: Line, q: Quantities) -> Entry:
         for index, option in enumerate(line.forms):
             free = form < 0
             chosen = free if option.applies is None else free & option.applies(q)
-            if np.any(chosen):
+            if chosen.any():
                 delta = np.where(chosen, option.delta(q), delta)
                 form = np.where(chosen, index, form)
     return Entry(line, delta, line.factor.weight(q) * delta, form)

@@ -167,7 +167,7 @@ def _with_resistances(cell: Cell, ideality: Array, plain: Array, rs_known: Mask,
     The masks have one axis more than the cells, so that all states share one search for the maximum power.
     """
     known = rs_known | rsh_known
-    if not np.any(known):
+    if not known.any():
         return np.broadcast_to(plain, known.shape)
     rs, rsh = np.where(rs_known, cell.rs, 0.0), np.where(rsh_known, cell.rsh, np.inf)
     diode = Diode.through(cell.voc, cell.jsc, cell.temperature, ideality, rs, rsh)

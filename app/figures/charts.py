@@ -166,14 +166,13 @@ def _axis(steps: tuple[Step, ...]) -> tuple[float, float]:
     return round_range(floor if floor > 0.12 * high else 0.0, high + 0.02 * span)
 
 
-def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
-    """Current density against voltage: the cell and its limit."""
+def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
+    """Current density against voltage: the cell and its limit. A live plot has no room for a caption."""
     ledger, cell_curve = picture.ledger, picture.cell_curve
     limit = ledger.limit
     drawn = not math.isnan(cell_curve.ideality)
     series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
-    caption = caption_of(picture)
     if drawn:
         series.append(Series("cell", _name(picture), cell_curve.voltage, cell_curve.current, "cell"))
         marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
@@ -192,7 +191,7 @@ def jv_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
         y_range=round_range(0.0, 1.12 * max(float(limit.jsc), float(ledger.cell.jsc))),
         series=tuple(series),
         marks=tuple(marks),
-        caption=(note, *caption),
+        caption=(note, *caption_of(picture)) if captioned else (),
         stale=STALE if stale else "",
     )
 
@@ -204,7 +203,7 @@ def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency
     return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role, side=side)
 
 
-def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
+def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
     """Efficiency of the limit against the gap, with the cell and its limit as marks."""
     gaps, ledger = picture.gap_curve, picture.ledger
     gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
@@ -224,6 +223,6 @@ def gap_plot_of(picture: Picture, stale: bool = False) -> PlotSpec:
             ),
             Mark("cell", f"{_name(picture)} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
-        caption=caption_of(picture),
+        caption=caption_of(picture) if captioned else (),
         stale=STALE if stale else "",
     )

@@ -77,9 +77,7 @@ def cell_curve(ledger: Ledger) -> Curve:
 
     Where no ideality does, the resistances are left out; below a fill factor of a quarter there is no such curve.
     """
-    cell = ledger.cell
-    rs = np.where(np.isnan(cell.rs), 0.0, cell.rs)
-    rsh = np.where(np.isnan(cell.rsh), np.inf, cell.rsh)
+    cell, rs, rsh = ledger.cell, ledger.diode.rs, ledger.diode.rsh
     ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature, rs, rsh)
     if np.isnan(ideality) and (rs > 0 or np.isfinite(rsh)):
         rs, rsh = np.zeros_like(rs), np.full_like(rsh, np.inf)

@@ -37,12 +37,13 @@ class LedgerModel(QAbstractTableModel):
             self.rows = rows
             self.endResetModel()
             return
-        changed = [k for k, (before, now) in enumerate(zip(self.rows, rows, strict=True)) if before != now]
         previous, self.rows = self.rows, rows
-        if changed:  # while a slider moves, the names and bases mostly stay, and need no repaint
-            same = all(a.line == b.line and a.basis == b.basis for a, b in zip(previous, rows, strict=True))
-            first, last = (1, 2) if same else (0, len(COLUMNS) - 1)
-            self.dataChanged.emit(self.index(changed[0], first), self.index(changed[-1], last))
+        for row, (before, now) in enumerate(zip(previous, rows, strict=True)):
+            if before != now:
+                for column, name in enumerate(COLUMNS):
+                    if before.text(name) != now.text(name):
+                        # Cell by cell: for a range, the view would paint the whole table anew.
+                        self.dataChanged.emit(self.index(row, column), self.index(row, column))
 
     def set_narrow(self, narrow: bool) -> None:
         """Use the short names of the lines, or the full ones."""

@@ -138,8 +138,8 @@ class Window(QMainWindow):
             self.gap_plot.show_spec(None)
             return
         self.waterfall.show_spec(waterfall_of(picture, stale), self.session.state.line)
-        self.jv_plot.show_spec(jv_plot_of(picture, stale))
-        self.gap_plot.show_spec(gap_plot_of(picture, stale))
+        self.jv_plot.show_spec(jv_plot_of(picture, stale, captioned=False))
+        self.gap_plot.show_spec(gap_plot_of(picture, stale, captioned=False))
 
     def _show_texts(self) -> None:
         state, outcome = self.session.state, self.outcomes.current()

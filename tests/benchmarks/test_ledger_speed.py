@@ -1,23 +1,16 @@
 """How long ledgers take: 100 000 cells at once, against one cell after the other by quadrature and root finding.
 
-The figures go to the file that the environment variable GAPLEDGER_BENCHMARKS names (out/benchmarks/ledger.json under
-the working directory if there is none). No absolute time is asserted, since the machine is not known; the ratio is,
+No absolute time is asserted, since the machine is not known; the ratio is,
 because it holds on any. The long run (`-m slow`) does the brute force for 1 000 cells, the short one for 12.
 """
 
 from __future__ import annotations
 
-import json
-import os
-import platform
 import statistics
 import time
 from collections.abc import Callable
-from pathlib import Path
 
-import numpy as np
 import pytest
-import scipy
 
 from physics.cell import Cell
 from physics.ledger import ledger_of
@@ -25,6 +18,7 @@ from physics.spectrum import reference_spectrum
 
 from ..physics import brute
 from ..physics.cells import random_cells
+from .record import write
 
 MANY = 100_000
 LEAST_RATIO = 100.0
@@ -60,24 +54,6 @@ def _brute_force(cells: Cell) -> tuple[float, list[dict[str, float]]]:
     return time.perf_counter() - start, losses
 
 
-def _file() -> Path:
-    return Path(os.environ.get("GAPLEDGER_BENCHMARKS") or Path("out") / "benchmarks" / "ledger.json")
-
-
-def _write(key: str, figures: dict[str, object]) -> None:
-    path = _file()
-    path.parent.mkdir(parents=True, exist_ok=True)
-    known = json.loads(path.read_text(encoding="utf-8")) if path.is_file() else {}
-    machine = {
-        "cores": os.cpu_count(),
-        "machine": platform.machine(),
-        "python": platform.python_version(),
-        "numpy": np.__version__,
-        "scipy": scipy.__version__,
-    }
-    path.write_text(json.dumps(known | {key: figures | machine}, indent=2) + "\n", encoding="utf-8")
-
-
 def _compare(brute_cells: int, repeats: int) -> dict[str, object]:
     cells = random_cells(MANY, AM15G, seed=1, irradiance=100.0)
     few = cells[:brute_cells]
@@ -109,7 +85,7 @@ def _compare(brute_cells: int, repeats: int) -> dict[str, object]:
 
 
 def _judge(key: str, figures: dict[str, object]) -> None:
-    _write(key, figures)
+    write("ledger", key, figures)
     ratio = figures["ratio_per_cell"]
     assert isinstance(ratio, float)
     assert ratio > LEAST_RATIO, f"the vectorised ledger is only {ratio:.0f} times as fast as brute force"

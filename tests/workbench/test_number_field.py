@@ -1,4 +1,4 @@
-"""Typing numbers with real keys, in five locales: what is meant, or a refusal beside the field, never something else."""
+"""Typing numbers with keys, in five locales: what is meant, or a refusal beside the field, never something else."""
 
 from collections.abc import Iterator
 
@@ -27,7 +27,8 @@ TYPED: list[tuple[str, str, float | None]] = [
     ("voc", "--1", None), ("voc", "1 2", None), ("voc", "0x1", None), ("voc", "1_1", None), ("voc", "1;1", None),
     ("voc", "−0.5", -0.5), ("voc", "-0.5", -0.5), ("voc", "1,5", 1.5), ("voc", "1;5", None), ("voc", "½", None),
     ("jsc", "24.53", 24.53), ("jsc", "24,53", 24.53), ("jsc", "24.53 mA/cm²", 24.53), ("jsc", "24.53 mA/cm2", 24.53),
-    ("jsc", "24.53 mA cm^-2", 24.53), ("jsc", "245.3 A/m2", 24.53), ("jsc", "24.53 mA", None), ("jsc", "2.453e1", 24.53),
+    ("jsc", "24.53 mA cm^-2", 24.53), ("jsc", "245.3 A/m2", 24.53), ("jsc", "24.53 mA", None),
+    ("jsc", "2.453e1", 24.53),
     ("ff", "77.6", 77.6), ("ff", "77,6 %", 77.6), ("ff", "77.6%", 77.6), ("ff", "120", 120.0), ("ff", "0.776", 0.776),
     ("gap", "1.6", 1.6), ("gap", "1600 meV", 1.6), ("gap", "1,6 eV", 1.6), ("gap", "1.6 V", None),
     ("ere", "0.0042", 0.0042), ("ere", "0.42 %", 0.0042), ("ere", "4.2e-3", 0.0042), ("ere", "1×10^-3", 1e-3),

@@ -13,10 +13,10 @@ from app.figures.presets import PRESETS
 from app.files.tables import read_table
 from app.ledger_rows import ledger_csv
 from app.session.state import CellEntry
+from app.wording import explain
 from app.workbench import start
 from app.workbench.export_panel import CHARTS, ExportPanel
 from app.workbench.window import Window
-from app.wording import explain
 from physics.lines import LINES
 
 from .conftest import settle
@@ -286,7 +286,7 @@ def test_pictures_do_not_depend_on_the_window(window: Window, tmp_path: Path, qa
     panel.deleteLater()
 
 
-def test_an_unforeseen_fault_is_told_and_the_program_goes_on(window: Window, capsys: pytest.CaptureFixture[str]) -> None:
+def test_an_unforeseen_fault_is_told_and_work_goes_on(window: Window, capsys: pytest.CaptureFixture[str]) -> None:
     try:
         raise RuntimeError("boom")
     except RuntimeError as fault:
