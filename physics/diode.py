@@ -40,15 +40,19 @@ def wright_omega(y: ArrayLike) -> Array:
 
     Notes
     -----
-    Newton's iteration in w; scipy has this function, but importing scipy.special costs more time than the rest of
-    the program takes to show its window.
+    The fourth-order iteration of Fritsch, Shafer and Crowley, Commun. ACM 16 (1973) 123, doi:10.1145/361952.361970
+    (from memory). scipy has this function, but importing scipy.special costs more time than the rest of the program
+    takes to show its window.
     """
     y = np.asarray(y, dtype=float)
-    w: Array = np.where(y > 1.0, y - np.log(np.maximum(y, 1.0)), np.exp(np.minimum(y, 1.0) - 1.0))
-    for _ in range(8):
-        step = w * (y - np.log(w) - w) / (1.0 + w)
-        w = np.maximum(w + step, w * 0.1)
-        if not (np.abs(step) > 1e-15 * w).any():
+    large = np.maximum(y, 1.0)
+    log = np.log(large)
+    w: Array = np.where(y > 1.0, large - log + log / large, np.exp(np.minimum(y, 1.0) - 1.0))
+    for _ in range(6):
+        excess = y - w - np.log(w)
+        half = (1.0 + w) * (1.0 + w + excess * (2.0 / 3.0))
+        w = w * (1.0 + excess / (1.0 + w) * (half - 0.5 * excess) / (half - excess))
+        if not (np.abs(excess) > 1e-4 * (1.0 + w)).any():  # the next error is its fourth power
             break
     return w
 
@@ -185,7 +189,8 @@ class Diode:
         conductance = 1.0 / (self.rsh * _OHM_CM2)
         amplitude = np.where(self.possible, self._amplitude(), np.nan)
         low, high = self.jsc * rs, self.voc
-        u = self.scale * (wright_omega(1.0 + self.voc / self.scale) - 1.0)
+        reduced = self.voc / self.scale
+        u = self.scale * (reduced - np.log1p(reduced))  # near the point of a diode without resistances
         u = np.where((u > low) & (u < high), u, 0.5 * (low + high))
         # J′ (u − 2 Rs J) + J = 0 solved for the exponential, once: a start on the right side of the knee.
         j = amplitude * -np.expm1((u - self.voc) / self.scale) + (self.voc - u) * conductance

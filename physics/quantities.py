@@ -140,7 +140,7 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
     """
     ideality = np.where(np.isnan(cell.ideality), 1.0, cell.ideality)
     has_rs, has_rsh = ~np.isnan(cell.rs), ~np.isnan(cell.rsh)
-    plain = ideal_fill_factor(cell.voc / (ideality * vt))
+    unity, plain = ideal_fill_factor(cell.voc / (np.stack([np.ones_like(ideality), ideality]) * vt))
 
     shunt_first = ~np.isnan(cell.pseudo_ff)
     first, diode = _with_resistances(
@@ -151,7 +151,7 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
         np.stack([has_rsh & shunt_first, has_rsh]),
     )
     return {
-        "ff_voltage": ideal_fill_factor(cell.voc / vt),
+        "ff_voltage": unity,
         "ff_ideality": plain,
         "ff_without_rs": np.where(shunt_first, first, plain),
         "ff_with_rs": np.where(shunt_first, diode, first),
