@@ -11,6 +11,7 @@ which is the usual J = J_L − J0 (exp(u/(n Vt)) − 1) − u/Rsh with J_L and J
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -225,6 +226,7 @@ def matching_ideality(
     temperature: ArrayLike,
     rs: ArrayLike = 0.0,
     rsh: ArrayLike = np.inf,
+    near: float = np.nan,
 ) -> Array:
     """Ideality with which a one-diode curve through Voc and Jsc has a given fill factor.
 
@@ -236,6 +238,8 @@ def matching_ideality(
         Fill factor to be met.
     voc, jsc, temperature, rs, rsh : array_like
         As in `Diode.through`.
+    near : float
+        An ideality to look around first, where one is at hand; it saves time and changes nothing else.
 
     Returns
     -------
@@ -246,28 +250,48 @@ def matching_ideality(
     Notes
     -----
     The fill factor falls as n rises, so the bracket is narrowed on a grid of 64 idealities a round, all cells at
-    once; the last bracket, 0.27 % wide, is crossed by a straight line.
+    once; the last bracket, at most 0.27 % wide, is crossed by a straight line.
     """
     args = np.broadcast_arrays(*(np.asarray(a, dtype=float) for a in (ff, voc, jsc, temperature, rs, rsh)))
     ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in args)
-    low = np.full(ff_.shape, np.log(0.05))
-    high = np.full(ff_.shape, np.log(2000.0))
-    grid = np.linspace(0.0, 1.0, 64)
     plain = not ((rs_ > 0).any() or np.isfinite(rsh_).any())
-    for narrowing in range(2):
-        ideality = np.exp(low + (high - low) * grid)
+
+    def fill_factors(ideality: Array) -> Array:
         if plain:
-            reached = ideal_fill_factor(voc_ / (ideality * thermal_voltage(temperature_)))
-        else:
-            reached = Diode.through(voc_, jsc_, temperature_, ideality, rs_, rsh_).fill_factor()
-        above = np.sum(reached >= ff_, axis=-1, keepdims=True)  # how many grid points still exceed the target
-        if narrowing:  # rounding can put a target that lies on a grid point an ulp outside its own bracket
-            above = np.clip(above, 1, grid.size - 1)
-        found = (above > 0) & (above < grid.size)
-        width = (high - low) / (grid.size - 1)
-        low = np.where(found, low + width * (above - 1), np.nan)
-        high = low + width
-    over = np.take_along_axis(reached, np.maximum(above - 1, 0), axis=-1)
-    under = np.take_along_axis(reached, np.minimum(above, grid.size - 1), axis=-1)
-    between: Array = np.exp(low + width * (over - ff_) / (over - under))[..., 0]
-    return between
+            return ideal_fill_factor(voc_ / (ideality * thermal_voltage(temperature_)))
+        return Diode.through(voc_, jsc_, temperature_, ideality, rs_, rsh_).fill_factor()
+
+    if near > 0:
+        low = np.full(ff_.shape, np.log(near) - _NEARBY)
+        between, _, found = _narrowed(fill_factors, ff_, low, low + 2.0 * _NEARBY)
+        if found.all():
+            return between[..., 0]
+    low = np.full(ff_.shape, np.log(0.05))
+    _, low, found = _narrowed(fill_factors, ff_, low, np.full(ff_.shape, np.log(2000.0)))
+    width = (np.log(2000.0) - np.log(0.05)) / (_GRID.size - 1)
+    between, _, _ = _narrowed(fill_factors, ff_, low, low + width, within=True)
+    return np.where(found, between, np.nan)[..., 0]
+
+
+_GRID = np.linspace(0.0, 1.0, 64)
+_NEARBY = 0.05  # half the width [ln n] of the bracket around a hint; its pieces are 0.16 % wide
+
+
+def _narrowed(
+    fill_factors: Callable[[Array], Array], target: Array, low: Array, high: Array, within: bool = False
+) -> tuple[Array, Array, Mask]:
+    """One round of narrowing a bracket [ln n]: the n on a straight line, the new lower end, and whether it is inside.
+
+    `within` says that the target is known to be inside, where rounding may put it an ulp outside.
+    """
+    reached = fill_factors(np.exp(low + (high - low) * _GRID))
+    above = (reached >= target).sum(axis=-1, keepdims=True)  # how many grid points still exceed the target
+    found = (above > 0) & (above < _GRID.size)
+    above = np.clip(above, 1, _GRID.size - 1)
+    found = found | within
+    width = (high - low) / (_GRID.size - 1)
+    start = low + width * (above - 1)
+    over = np.take_along_axis(reached, above - 1, axis=-1)
+    under = np.take_along_axis(reached, above, axis=-1)
+    with np.errstate(invalid="ignore", divide="ignore", over="ignore"):
+        return np.exp(start + width * (over - target) / (over - under)), start, found

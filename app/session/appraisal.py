@@ -12,7 +12,8 @@ from app.session.fields import FIELD_BY_KEY, FIELDS
 from app.session.state import CellEntry, Choices, Unread
 from physics.cell import UNKNOWN, Cell
 from physics.checks import Check, Severity, failed
-from physics.ledger import Ledger, ledger_of
+from physics.ledger import Ledger, ledger_against
+from physics.limit import Faces, Limit, detailed_balance_limit
 from physics.spectrum import REFERENCE_NAMES, Illumination, illumination
 from physics.units import Array
 
@@ -74,6 +75,15 @@ def light_named(name: str) -> Illumination:
         raise ValueError(
             f"The spectrum {name!r} is not known here: use {known}, or blackbody:6000 for a black body of 6000 K."
         ) from fault
+
+
+@lru_cache(maxsize=64)
+def limit_under(spectrum: str, gap: float, temperature: float, irradiance: float, faces: Faces) -> Limit:
+    """The limit of one gap [eV] at a temperature [K] under a named light of an irradiance [mW cm⁻²].
+
+    Most inputs of a cell do not touch its limit: it stays the same object while they change.
+    """
+    return detailed_balance_limit(gap, temperature, light_named(spectrum), irradiance, faces)
 
 
 def gap_fault(gap: float, light: Illumination) -> str:
@@ -153,7 +163,9 @@ def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
         return Appraisal(entry, tuple(problems), None)
     wrong = {p.field for p in problems}
     sound = {key: None if key in wrong else value for key, value in entry.values.items()}
-    ledger = ledger_of(Cell.of(**physics_values(sound)), light, choices.attribution, choices.faces)
+    cell = Cell.of(**physics_values(sound))
+    limit = limit_under(entry.spectrum, float(cell.gap), float(cell.temperature), float(cell.irradiance), choices.faces)
+    ledger = ledger_against(cell, limit, choices.attribution)
     problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in failed(ledger)]
     forbidden = any(p.severity is Severity.IMPOSSIBLE for p in problems)
     return Appraisal(entry, tuple(problems), None if forbidden else ledger)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -72,13 +73,14 @@ class Outcome:
     stale: bool
 
 
-def cell_curve(ledger: Ledger) -> Curve:
+def cell_curve(ledger: Ledger, near: float = math.nan) -> Curve:
     """One-diode curve through Voc, Jsc and FF, with the Rs and Rsh given and the ideality that meets FF.
 
+    `near` is the ideality of an earlier curve of the same cell, if there is one: a place to look first.
     Where no ideality does, the resistances are left out; below a fill factor of a quarter there is no such curve.
     """
     cell, rs, rsh = ledger.cell, ledger.diode.rs, ledger.diode.rsh
-    ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature, rs, rsh)
+    ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature, rs, rsh, near)
     if np.isnan(ideality) and (rs > 0 or np.isfinite(rsh)):
         rs, rsh = np.zeros_like(rs), np.full_like(rsh, np.inf)
         ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature)
@@ -86,6 +88,7 @@ def cell_curve(ledger: Ledger) -> Curve:
     return Curve(voltage, current, float(ideality))
 
 
+@lru_cache(maxsize=32)
 def limit_curve(limit: Limit) -> Curve:
     """J–V curve of a limit."""
     voltage, current = Diode.through(limit.voc, limit.jsc, limit.temperature).curve()
@@ -101,14 +104,15 @@ def gap_curve(spectrum: str, irradiance: float, temperature: float, faces: Faces
     return detailed_balance_limit(gaps, temperature, light, irradiance, faces)
 
 
-def picture_of(appraisal: Appraisal, choices: Choices) -> Picture | None:
-    """The picture of a cell that has a ledger; None where it has none."""
+def picture_of(appraisal: Appraisal, choices: Choices, earlier: Picture | None = None) -> Picture | None:
+    """The picture of a cell that has a ledger, None where it has none; an `earlier` one of the cell saves time."""
     ledger, entry = appraisal.ledger, appraisal.entry
     if ledger is None:
         return None
     cell = ledger.cell
+    near = math.nan if earlier is None else earlier.cell_curve.ideality
     gaps = gap_curve(entry.spectrum, float(cell.irradiance), float(cell.temperature), choices.faces)
-    return Picture(entry, choices, ledger, cell_curve(ledger), limit_curve(ledger.limit), gaps)
+    return Picture(entry, choices, ledger, cell_curve(ledger, near), limit_curve(ledger.limit), gaps)
 
 
 class Outcomes:
@@ -130,8 +134,8 @@ class Outcomes:
         if known is not None and known[0] is entry and known[1] is choices:
             return known[2]
         appraisal = appraise(entry, choices)
-        fresh = picture_of(appraisal, choices)
         earlier = known[2].picture if known is not None else None
+        fresh = picture_of(appraisal, choices, earlier)
         outcome = Outcome(appraisal, fresh or earlier, fresh is None)
         self._known[entry.ident] = (entry, choices, outcome)
         return outcome

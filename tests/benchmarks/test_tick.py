@@ -38,6 +38,12 @@ def _settle() -> None:
         QApplication.processEvents()
 
 
+def _answer() -> None:
+    """One turn of the event loop works out what follows from the change, the next one paints it."""
+    QApplication.processEvents()
+    QApplication.processEvents()
+
+
 class Bare(QWidget):
     """The plots alone."""
 
@@ -98,18 +104,18 @@ def _measure(window: Window, rounds: int, ticks: int) -> dict[str, object]:
 
     def held(k: int) -> None:
         slider.setSliderPosition(middle - 20 + k % 41)
-        QApplication.processEvents()
+        _answer()
 
     def together(k: int) -> None:
         window.session.do(SetValue(ident, "voc", values[k % len(values)]))
-        QApplication.processEvents()
+        _answer()
 
     def repaint(k: int) -> None:
         waterfall, jv_plot, gap_plot = specs[k % len(specs)]
         bare.waterfall.show_spec(waterfall, _LINE)
         bare.jv_plot.show_spec(jv_plot)
         bare.gap_plot.show_spec(gap_plot)
-        QApplication.processEvents()
+        _answer()
 
     timed: dict[str, list[float]] = {"held": [], "together": [], "bare": []}
     for _ in range(rounds):
