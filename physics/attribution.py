@@ -72,9 +72,9 @@ def factor_weights(
     log-mean: B. W. Ang, Energy Policy 33 (2005) 867, doi:10.1016/j.enpol.2003.10.010 (additive LMDI-I).
     """
     if attribution == "log-mean":
-        whole = log_mean(top[0] * top[1] * top[2], bottom[0] * bottom[1] * bottom[2])
-        current, voltage, fill = (whole / log_mean(t, b) for t, b in zip(top, bottom, strict=True))
-        return current, voltage, fill
+        powers = top[0] * top[1] * top[2], bottom[0] * bottom[1] * bottom[2]
+        whole, current, voltage, fill = log_mean(np.stack([powers[0], *top]), np.stack([powers[1], *bottom]))
+        return whole / current, whole / voltage, whole / fill
     if attribution == "ladder":
         return top[1] * top[2], bottom[0] * top[2], bottom[0] * bottom[1]
     raise ValueError(f"unknown attribution {attribution!r}: use one of {', '.join(ATTRIBUTIONS)}")

@@ -126,16 +126,17 @@ class Ledger:
 
 def _work_out(line: Line, q: Quantities) -> Entry:
     """One line for all cells: the first form that applies to a cell gives its Δ."""
-    first = line.forms[0]
-    if first.applies is None:
-        delta, form = first.delta(q), np.zeros(q.incident.shape, dtype=np.intp)
+    shape = q.incident.shape
+    masks = [None if option.applies is None else option.applies(q) for option in line.forms]
+    if masks[0] is None or masks[0].all():  # by far the most frequent case, and the quickest
+        delta, form = line.forms[0].delta(q), np.zeros(shape, dtype=np.intp)
     else:
-        delta, form = np.zeros_like(q.incident), np.full(q.incident.shape, -1, dtype=np.intp)
-        for index, option in enumerate(line.forms):
-            free = form < 0
-            chosen = free if option.applies is None else free & option.applies(q)
+        delta, form = np.zeros(shape), np.full(shape, -1, dtype=np.intp)
+        for index in reversed(range(len(masks))):  # an earlier form overrules a later one
+            mask = masks[index]
+            chosen = np.ones(shape, dtype=bool) if mask is None else mask
             if chosen.any():
-                delta = np.where(chosen, option.delta(q), delta)
+                delta = np.where(chosen, line.forms[index].delta(q), delta)
                 form = np.where(chosen, index, form)
     return Entry(line, delta, line.factor.weight(q) * delta, form)
 

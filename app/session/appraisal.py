@@ -49,9 +49,10 @@ class Appraisal:
 
     def about(self, field: str) -> Problem | None:
         """The gravest problem of a field, or None."""
+        if not self.problems:
+            return None
         mine = [p for p in self.problems if p.field == field]
-        mine.sort(key=lambda p: p.severity is not Severity.IMPOSSIBLE)
-        return mine[0] if mine else None
+        return min(mine, key=lambda p: p.severity is not Severity.IMPOSSIBLE, default=None)
 
 
 @lru_cache(maxsize=64)

@@ -54,7 +54,7 @@ class Window(QMainWindow):
         self.resize(1280, 800)
         self._due = QTimer(self, singleShot=True, interval=0)
         self._due.timeout.connect(self.refresh)
-        self._texts_due = QTimer(self, singleShot=True, interval=33)
+        self._texts_due = QTimer(self, singleShot=True, interval=50)
         self._texts_due.timeout.connect(self._show_texts)
         session.listen(self._due.start)
         self.shelf.cell_picked.connect(session.pick)
@@ -113,7 +113,7 @@ class Window(QMainWindow):
     def refresh(self) -> None:
         """Show the session as it is now.
 
-        While a slider is held, the charts and the inputs follow in the same frame and the texts behind them thirty
+        While a slider is held, the charts and the inputs follow in the same frame and the texts behind them twenty
         times a second, which is faster than digits can be read.
         """
         outcome = self.outcomes.current()

@@ -3,7 +3,7 @@
 Three things are timed in turn, so that a slow phase of the machine meets all of them:
 
 - a tick while a slider is held: the field, the whole calculation, the waterfall and both plots, painted; the table, the
-  shelf and the explanation follow thirty times a second, as they do for a user;
+  shelf and the explanation follow twenty times a second, as they do for a user;
 - a tick with all of these in the same frame (a change that does not come from a held slider);
 - a bare repaint: the same waterfall and the same two plots in a window of their own, fed with descriptions that were
   made beforehand. Fixed ranges, cached axes, no calculation, no other widget.
