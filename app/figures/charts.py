@@ -24,6 +24,7 @@ from physics.ledger import Entry, Ledger, entries_of
 from physics.lines import Basis, Family, Section
 
 STALE = "Last valid input: the fields marked in red do not enter"
+_LONGEST_BESIDE = 16
 _ROLES: dict[Family, Role] = {
     Family.SPECTRAL: "spectral",
     Family.VOLTAGE: "voltage",
@@ -63,6 +64,12 @@ def caption_of(picture: Picture) -> tuple[str, ...]:
 
 def _name(picture: Picture) -> str:
     return shown_name(picture.entry.name) or "Unnamed cell"
+
+
+def _short_name(picture: Picture) -> str:
+    """The name where it stands beside a point."""
+    name = _name(picture)
+    return name if len(name) <= _LONGEST_BESIDE else f"{name[: _LONGEST_BESIDE - 1].rstrip()}…"
 
 
 def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
@@ -107,7 +114,8 @@ def _marks_explained(ledger: Ledger) -> tuple[str, ...]:
     ]
     if reasons:
         lines.append(f"Broken outline: assumed ({'; '.join(dict.fromkeys(reasons))})")
-    if any(float(e.loss) < 0.0 for e in entries_of(ledger, Section.LIMIT_TO_CELL)):
+    incident = float(ledger.limit.incident)
+    if any(loss_text(float(e.loss), incident).startswith("+") for e in entries_of(ledger, Section.LIMIT_TO_CELL)):
         lines.append("Arrow: a gain")
     return tuple(lines)
 
@@ -145,12 +153,13 @@ def _steps(name: str, ledger: Ledger) -> tuple[Step, ...]:
 def _step(entry: Entry, start: float, end: float, incident: float) -> Step:
     form = entry.form_at()
     assumed = form is not None and form.basis is Basis.ASSUMED
+    amount = loss_text(float(entry.loss), incident)
     return Step(
         key=entry.line.key,
         label=entry.line.title,
         start=start,
-        end=end,
-        value_text=loss_text(float(entry.loss), incident),
+        end=end if amount[0] in "+−" else start,  # what prints as zero is drawn as zero, not as a gain of rounding
+        value_text=amount,
         detail_text=delta_text(entry),
         role=_ROLES[entry.line.family],
         assumed=assumed,
@@ -209,7 +218,7 @@ def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
     gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
     curve = 100.0 * gaps.efficiency
     best = float(gaps.gap[np.argmax(curve)])
-    outside: Side = "ne" if gap > best else "nw"  # the curve falls away from its best gap: texts beside it stay clear
+    clear: Side = "ne" if gap > best - 0.05 else "se"  # above the falling side of the curve, below the rising one
     return PlotSpec(
         title=f"{_name(picture)}: efficiency against the gap",
         x_label="Gap (eV)",
@@ -219,9 +228,9 @@ def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
         series=(Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"),),
         marks=(
             Mark(
-                "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, outside,
+                "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, clear,
             ),
-            Mark("cell", f"{_name(picture)} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
+            Mark("cell", f"{_short_name(picture)} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
         caption=caption_of(picture) if captioned else (),
         stale=STALE if stale else "",

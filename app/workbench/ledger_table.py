@@ -114,6 +114,7 @@ class LedgerTable(QTableView):
         digit = self.fontMetrics().horizontalAdvance("0")
         for column, digits in ((1, 9), (2, 14), (3, 11)):
             self.setColumnWidth(column, digits * digit)
+        self._roomy = sum(self.columnWidth(column) for column in (1, 2, 3)) + 9 * digit
         self.clicked.connect(lambda index: self.line_picked.emit(self._model.rows[index.row()].key))
         self.selectionModel().currentRowChanged.connect(self._moved)
         theme.changed.connect(self.viewport().update)
@@ -134,6 +135,8 @@ class LedgerTable(QTableView):
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Choose full or short names by the room there is."""
         super().resizeEvent(event)
+        # Where room is scarce the basis goes first; the tooltip and the explanation have it, too.
+        self.setColumnHidden(COLUMNS.index("basis"), self.viewport().width() < self._roomy)
         self._fit_names()
 
     def _fit_names(self) -> None:

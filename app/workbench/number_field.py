@@ -140,6 +140,7 @@ class NumberField(QWidget):
         self._shown, self._touched = value, False
         if self._read() != value:
             self.entry.setText(self._text(value))
+            self.entry.setCursorPosition(0)
         if not self.slider.isSliderDown():
             position = slider_position(self.field, value) if isinstance(value, float | int) else 0
             if position != self.slider.value():

@@ -45,7 +45,8 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             axis.enableAutoSIPrefix(False)
             axis.setTickDensity(1.6)
         item.getAxis("left").setWidth(46)
-        self.setMinimumSize(180, 120)
+        item.getAxis("bottom").setHeight(40)
+        self.setMinimumSize(180, 130)
         self.scene().sigMouseClicked.connect(self._clicked)
 
     def show_spec(self, spec: PlotSpec) -> None:

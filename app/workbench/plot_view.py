@@ -6,7 +6,7 @@ from html import escape
 from typing import TYPE_CHECKING
 
 from PySide6.QtGui import QColor
-from PySide6.QtWidgets import QLabel, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from app.figures.spec import PlotSpec
 from app.workbench.theme import Heading, Theme
@@ -32,13 +32,16 @@ class PlotView(QWidget):
         self._canvas: PlotCanvas | None = None
         self.head = Heading(title)
         self.key = QLabel()
+        for label in (self.head, self.key):
+            label.setMinimumHeight(label.fontMetrics().height() + 2)
+            label.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
         self._column = QVBoxLayout(self)
         self._column.setContentsMargins(8, 4, 8, 4)
         self._column.setSpacing(0)
         self._column.addWidget(self.head)
         self._column.addWidget(self.key)
         self._column.addStretch(1)
-        self.setMinimumSize(200, 160)
+        self.setMinimumSize(200, 185)
         self.setAutoFillBackground(True)
         theme.changed.connect(self._recolour)
         self._recolour()
