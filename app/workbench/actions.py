@@ -77,7 +77,8 @@ class Actions(QObject):
         self.duplicate = self._action("&Duplicate cell", self._duplicate, "Ctrl+D", cell)
         self.remove = self._action("&Remove cell", self._remove, "Ctrl+Backspace", cell)
         self.undo = self._action("Undo", session.undo, standard.Undo)
-        self.redo = self._action("Redo", session.redo, standard.Redo)
+        self.redo = self._action("Redo", session.redo)
+        self.redo.setShortcuts([QKeySequence("Ctrl+Y"), QKeySequence("Ctrl+Shift+Z")])  # both habits, on every desktop
         self.copy_chart = self._action("&Copy waterfall as picture", self._copy_chart, "Ctrl+Shift+C", picture)
         self.copy_table = self._action("Copy ledger as &table", self._copy_table, "Ctrl+Shift+T", picture)
         self.export = self._action("&Export a picture…", self.show_export, "Ctrl+E", picture)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QLineEdit, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QScrollArea, QVBoxLayout, QWidget
 
 from app.session.appraisal import light_named
 from app.session.commands import Describe, SetValue
@@ -11,7 +11,7 @@ from app.session.fields import FIELD_BY_KEY
 from app.session.outcome import Outcome
 from app.session.session import Session
 from app.session.state import Value
-from app.workbench.number_field import NumberField, ignore_wheel, label_width
+from app.workbench.number_field import Entry, NumberField, ignore_wheel, label_width
 from app.workbench.theme import Heading, Theme
 
 _GROUPS: tuple[tuple[str, tuple[str, ...]], ...] = (
@@ -36,8 +36,8 @@ class InputsPanel(QScrollArea):
         self.setVerticalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOn)
         self._page = QWidget()
         self._page.setObjectName("inputs")
-        self.name = QLineEdit()
-        self.note = QLineEdit()
+        self.name = Entry()
+        self.note = Entry()
         self.spectrum = QComboBox()
         self.spectrum_message = QLabel()
         self.fields: dict[str, NumberField] = {}

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from PySide6.QtCore import QEvent, QObject, Qt, Signal
-from PySide6.QtGui import QFocusEvent, QWheelEvent
+from PySide6.QtGui import QFocusEvent, QKeyEvent, QWheelEvent
 from PySide6.QtWidgets import QHBoxLayout, QLabel, QLineEdit, QSlider, QVBoxLayout, QWidget
 
 from app.files.numbers import NumberError, write_number
@@ -54,9 +54,21 @@ class CalmSlider(QSlider):
 
 
 class Entry(QLineEdit):
-    """The text of a field. The wheel does nothing in it; leaving it is told."""
+    """A line of text whose changes the session undoes, not the line itself. The wheel does nothing; leaving is told."""
 
     left = Signal()
+
+    def event(self, event: QEvent) -> bool:
+        """Leave undo and redo to the window, where they take back the same change as everywhere."""
+        if (
+            event.type() == QEvent.Type.ShortcutOverride
+            and isinstance(event, QKeyEvent)
+            and event.modifiers() & Qt.KeyboardModifier.ControlModifier
+            and event.key() in (Qt.Key.Key_Z, Qt.Key.Key_Y)
+        ):
+            event.ignore()
+            return False
+        return super().event(event)
 
     def wheelEvent(self, event: QWheelEvent) -> None:
         """Scroll what is around the field, never its number."""

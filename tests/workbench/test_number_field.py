@@ -117,6 +117,23 @@ def test_a_visit_to_a_field_is_one_step_of_undo(window: Window) -> None:
     assert window.inputs.fields["voc"].entry.text() == "1.048"
 
 
+def test_undo_in_a_field_is_the_sessions(window: Window) -> None:
+    before = window.session.state
+    _type(window, "voc", "1.1234")
+    entry = window.inputs.fields["voc"].entry
+    QTest.keyClick(entry, Qt.Key.Key_Z, Qt.KeyboardModifier.ControlModifier)
+    settle()
+    assert window.session.state == before
+    assert entry.text() == "1.048"
+    both = Qt.KeyboardModifier.ControlModifier | Qt.KeyboardModifier.ShiftModifier
+    for key, modifiers in ((Qt.Key.Key_Y, Qt.KeyboardModifier.ControlModifier), (Qt.Key.Key_Z, both)):
+        QTest.keyClick(entry, key, modifiers)
+        settle()
+        assert _value(window, "voc") == 1.1234
+        window.session.undo()
+        settle()
+
+
 def _turn_wheel(widget: QWidget) -> None:
     middle = QPointF(widget.rect().center())
     event = QWheelEvent(
