@@ -7,7 +7,7 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QMimeData, QObject
+from PySide6.QtCore import QObject
 from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
 from PySide6.QtWidgets import QComboBox, QFileDialog, QLabel, QMenu, QToolBar
 
@@ -235,9 +235,7 @@ class Actions(QObject):
     def _copy_table(self) -> None:
         picture = self._window.outcomes.current().picture
         if picture is not None:
-            data = QMimeData()
-            data.setText(ledger_tsv(picture))
-            QGuiApplication.clipboard().setMimeData(data)
+            QGuiApplication.clipboard().setText(ledger_tsv(picture))
             self._say("The ledger is on the clipboard as a table.")
 
     def _copy_chart(self) -> None:

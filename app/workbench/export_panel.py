@@ -6,7 +6,7 @@ from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
-from PySide6.QtCore import QMimeData, QSize, Qt, Signal
+from PySide6.QtCore import QSize, Qt, Signal
 from PySide6.QtGui import QGuiApplication, QImage, QPixmap
 from PySide6.QtWidgets import (
     QComboBox,
@@ -49,10 +49,12 @@ def chart_of(picture: Picture, chart: str, title: str = "") -> Spec:
 
 
 def copy_image(picture: QImage) -> None:
-    """Put a picture on the clipboard."""
-    data = QMimeData()
-    data.setImageData(picture)
-    QGuiApplication.clipboard().setMimeData(data)
+    """Put a picture on the clipboard.
+
+    Not by way of a QMimeData made here: the clipboard outlives the interpreter, and letting go of such an object then
+    ends the process with a segmentation fault.
+    """
+    QGuiApplication.clipboard().setImage(picture)
 
 
 class ExportPanel(QDialog):
