@@ -218,7 +218,8 @@ def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
     gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
     curve = 100.0 * gaps.efficiency
     best = float(gaps.gap[np.argmax(curve)])
-    clear: Side = "ne" if gap > best - 0.05 else "se"  # above the falling side of the curve, below the rising one
+    high = 100 * limit > 0.92 * float(np.max(curve))
+    clear: Side = "ne" if high or gap > best else "se"  # over the falling side of the curve, under the rising one
     return PlotSpec(
         title=f"{_name(picture)}: efficiency against the gap",
         x_label="Gap (eV)",

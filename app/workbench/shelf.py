@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from PySide6.QtCore import QAbstractListModel, QModelIndex, QPersistentModelIndex, Qt, Signal
+from PySide6.QtCore import QAbstractListModel, QModelIndex, QPersistentModelIndex, QSize, Qt, Signal
 from PySide6.QtWidgets import QAbstractItemView, QListView, QWidget
 
 from app.session.outcome import Outcomes
@@ -15,9 +15,11 @@ Index = QModelIndex | QPersistentModelIndex
 class ShelfModel(QAbstractListModel):
     """The cells of a session as list rows."""
 
-    def __init__(self, outcomes: Outcomes, parent: QWidget | None = None) -> None:
+    def __init__(self, outcomes: Outcomes, parent: QWidget) -> None:
         super().__init__(parent)
         self._outcomes = outcomes
+        metrics = parent.fontMetrics()
+        self._two_lines = QSize(10 * metrics.averageCharWidth(), 2 * metrics.lineSpacing() + 8)
         self._cells: tuple[CellEntry, ...] = ()
         self._texts: dict[int, str] = {}  # as last shown: a repaint only where it would show something else
 
@@ -49,6 +51,8 @@ class ShelfModel(QAbstractListModel):
         if role == Qt.ItemDataRole.DisplayRole:
             text = self._texts[cell.ident] = self._text(cell)
             return text
+        if role == Qt.ItemDataRole.SizeHintRole:
+            return self._two_lines
         if role == Qt.ItemDataRole.ToolTipRole:
             return "\n".join(part for part in (cell.name, cell.group, cell.note) if part)
         return None
