@@ -45,7 +45,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             axis.enableAutoSIPrefix(False)
             axis.setTickDensity(1.6)
         item.getAxis("left").setWidth(46)
-        item.getAxis("bottom").setHeight(40)
+        item.getAxis("bottom").setHeight(36)
         self.setMinimumSize(180, 130)
         self.scene().sigMouseClicked.connect(self._clicked)
 
@@ -70,10 +70,12 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
 
     def _label_axes(self, spec: PlotSpec) -> None:
         palette = self._theme.palette
-        style = {"color": palette.ink, "font-size": "9pt"}
+        style = {"color": palette.ink, "font-size": "8pt"}
         item = self.getPlotItem()
-        item.getAxis("bottom").setLabel(spec.x_label, **style)
-        item.getAxis("left").setLabel(spec.y_label, **style)
+        for name, text in (("bottom", spec.x_label), ("left", spec.y_label)):
+            axis = item.getAxis(name)
+            axis.setLabel(text, **style)
+            axis.resizeEvent()  # the label is centred by its width of then only when the axis is resized
 
     def _show_series(self, series: Series) -> None:
         curve = self._curves.get(series.key)

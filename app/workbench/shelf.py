@@ -19,7 +19,7 @@ class ShelfModel(QAbstractListModel):
         super().__init__(parent)
         self._outcomes = outcomes
         metrics = parent.fontMetrics()
-        self._two_lines = QSize(10 * metrics.averageCharWidth(), 2 * metrics.lineSpacing() + 8)
+        self._two_lines = QSize(10 * metrics.averageCharWidth(), 2 * metrics.lineSpacing() + 2)
         self._cells: tuple[CellEntry, ...] = ()
         self._texts: dict[int, str] = {}  # as last shown: a repaint only where it would show something else
 

@@ -11,6 +11,7 @@ from types import TracebackType
 
 from PySide6.QtWidgets import QApplication
 
+from app.figures.fonts import families
 from app.session.commands import AddCells
 from app.session.session import Session
 from app.session.state import CellEntry, State
@@ -32,10 +33,12 @@ def application(arguments: Sequence[str]) -> QApplication:
     """The Qt application, made once."""
     existing = QApplication.instance()
     if isinstance(existing, QApplication):
+        families()
         return existing
     app = QApplication(["gapledger", *arguments])
     app.setApplicationName("Gapledger")
     app.setStyle("Fusion")
+    families()  # fonts that come in later would change the type under texts that are already measured
     return app
 
 
