@@ -52,11 +52,11 @@ def with_unit(value: float, unit: str, digits: int = 5) -> str:
         return "unknown"
     if value in (float("inf"), float("-inf")):
         return "∞" if value > 0 else f"{MINUS}∞"
-    text = write_number(value, digits)
-    head, power, tail = text.partition("×")
-    if "." in head:
-        head = head.rstrip("0").rstrip(".")
-    text = f"{head}{power}{tail}"
+    text = f"{value:.{digits}g}".replace("-", MINUS)
+    if "e" in text:  # very large or very small: written with a power of ten
+        head, power, tail = write_number(value, digits).partition("×")
+        head = head.rstrip("0").rstrip(".") if "." in head else head
+        text = f"{head}{power}{tail}"
     return f"{text}{THIN}{unit}" if unit else text
 
 

@@ -4,10 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass, fields
 
-import numpy as np
 from numpy.typing import ArrayLike
 
-from physics.units import ZERO_CELSIUS, Array
+from physics.units import ZERO_CELSIUS, Array, aligned
 
 UNKNOWN = float("nan")  #: Marks a value that was not measured.
 
@@ -76,7 +75,7 @@ class Cell:
             When the shapes do not broadcast.
         """
         given = (gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff)
-        return cls(*np.broadcast_arrays(*(np.asarray(value, dtype=float) for value in given)))
+        return cls(*aligned(*given))
 
     @property
     def shape(self) -> tuple[int, ...]:

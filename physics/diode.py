@@ -17,7 +17,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike
 
-from physics.units import Array, Mask, thermal_voltage
+from physics.units import Array, Mask, aligned, thermal_voltage
 
 _OHM_CM2 = 1e-3  # mA cm⁻² through Ω cm² gives mV
 _NEWTON_STEPS = 80
@@ -120,8 +120,7 @@ class Diode:
     ) -> Diode:
         """The curve for an `ideality` n at a `temperature` [K]; other arguments as the class says."""
         scale = np.asarray(ideality, dtype=float) * thermal_voltage(temperature)
-        arrays = (np.asarray(a, dtype=float) for a in (voc, jsc, scale, rs, rsh))
-        return cls(*np.broadcast_arrays(*arrays))
+        return cls(*aligned(voc, jsc, scale, rs, rsh))
 
     @property
     def drop_below_voc(self) -> Mask:
@@ -197,20 +196,24 @@ class Diode:
         j = amplitude * -np.expm1((u - self.voc) / self.scale) + (self.voc - u) * conductance
         knee = self.voc + self.scale * np.log((j / (u - 2.0 * rs * j) - conductance) * self.scale / amplitude)
         u = np.where((knee > low) & (knee < high), knee, u)
+        inverse, top, near_enough = 1.0 / self.scale, amplitude + self.voc * conductance, _TOLERANCE * self.voc
         for _ in range(_NEWTON_STEPS):
-            grown = amplitude * np.exp((u - self.voc) / self.scale)
-            j = amplitude - grown + (self.voc - u) * conductance
-            slope = -grown / self.scale - conductance
-            gain = slope * (u - 2.0 * rs * j) + j
-            bend = -grown / self.scale**2 * (u - 2.0 * rs * j) + 2.0 * slope * (1.0 - rs * slope)
-            low, high = np.where(gain > 0, u, low), np.where(gain > 0, high, u)
-            newton = u - gain / bend
-            better = np.where((newton >= low) & (newton <= high), newton, 0.5 * (low + high))
-            moved, u = np.abs(better - u), better
-            if not (moved > _TOLERANCE * self.voc).any():
+            grown = amplitude * np.exp((u - self.voc) * inverse)
+            j = top - grown - u * conductance
+            bent = grown * inverse
+            fall = bent + conductance  # −J′
+            reach = u - 2.0 * rs * j
+            gain = j - fall * reach
+            newton = u + gain / (bent * inverse * reach + 2.0 * fall * (1.0 + rs * fall))
+            rising = gain > 0
+            low, high = np.where(rising, u, low), np.where(rising, high, u)
+            outside = (newton < low) | (newton > high)
+            if outside.any():
+                newton = np.where(outside, 0.5 * (low + high), newton)
+            moved, u = np.abs(newton - u), newton
+            if not (moved > near_enough).any():
                 break
-        grown = amplitude * np.exp((u - self.voc) / self.scale)
-        j = amplitude - grown + (self.voc - u) * conductance
+        j = amplitude * -np.expm1((u - self.voc) * inverse) + (self.voc - u) * conductance
         return u - rs * j, j
 
     def fill_factor(self) -> Array:
@@ -252,8 +255,7 @@ def matching_ideality(
     The fill factor falls as n rises, so the bracket is narrowed on a grid of 64 idealities a round, all cells at
     once; the last bracket, at most 0.27 % wide, is crossed by a straight line.
     """
-    args = np.broadcast_arrays(*(np.asarray(a, dtype=float) for a in (ff, voc, jsc, temperature, rs, rsh)))
-    ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in args)
+    ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in aligned(ff, voc, jsc, temperature, rs, rsh))
     plain = not ((rs_ > 0).any() or np.isfinite(rsh_).any())
 
     def fill_factors(ideality: Array) -> Array:
@@ -261,7 +263,7 @@ def matching_ideality(
             return ideal_fill_factor(voc_ / (ideality * thermal_voltage(temperature_)))
         return Diode.through(voc_, jsc_, temperature_, ideality, rs_, rsh_).fill_factor()
 
-    if near > 0:
+    if 0.06 < near < 1900.0:  # so that what is looked at lies within the bounds
         low = np.full(ff_.shape, np.log(near) - _NEARBY)
         between, _, found = _narrowed(fill_factors, ff_, low, low + 2.0 * _NEARBY)
         if found.all():

@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike
 from physics.diode import ideal_fill_factor
 from physics.emission import photon_current
 from physics.spectrum import Illumination
-from physics.units import Array, thermal_voltage
+from physics.units import Array, aligned, thermal_voltage
 
 #: How many faces of the absorber emit: 1 with an ideal rear mirror, 2 without.
 Faces = Literal[1, 2]
@@ -105,9 +105,7 @@ def detailed_balance_limit(
     sun comes out as 40.80 % at 1.103 eV, where the generalised form has 40.74 % at 1.109 eV
     (tests/physics/test_limit_quadrature.py).
     """
-    gap, temperature, irradiance = np.broadcast_arrays(
-        *(np.asarray(a, dtype=float) for a in (gap, temperature, irradiance))
-    )
+    gap, temperature, irradiance = aligned(gap, temperature, irradiance)
     incident = np.where(np.isnan(irradiance), light.power, np.where(irradiance > 0, irradiance, np.nan))
     scale = incident / light.power
     jsc = scale * light.photon_current_above(gap)

@@ -28,3 +28,12 @@ ZERO_CELSIUS = 273.15  #: 0 °C [K]
 def thermal_voltage(temperature: ArrayLike) -> Array:
     """Thermal voltage Vt = kT/q [V] at a `temperature` [K] of any shape."""
     return np.asarray(temperature, dtype=float) * (BOLTZMANN / ELEMENTARY_CHARGE)
+
+
+def aligned(*values: ArrayLike) -> tuple[Array, ...]:
+    """Arrays of one shape from scalars and arrays of mutually broadcastable shapes; ValueError where they are not."""
+    arrays = tuple(np.asarray(value, dtype=float) for value in values)
+    shape = arrays[0].shape
+    if all(array.shape == shape for array in arrays):  # broadcasting costs ten times as much as this look
+        return arrays
+    return tuple(np.broadcast_arrays(*arrays))

@@ -126,10 +126,10 @@ def physics_values(columns: Mapping[str, object]) -> dict[str, Array]:
     for field in FIELDS:
         if field.key == "area":
             continue
-        given = columns.get(field.key)
-        array = np.asarray(UNKNOWN if given is None else given, dtype=float)
-        if field.default is not None:
-            array = np.where(np.isnan(array), field.default, array)
+        given, default = columns.get(field.key), UNKNOWN if field.default is None else field.default
+        array = np.asarray(default if given is None else given, dtype=float)
+        if field.default is not None and array.ndim:
+            array = np.where(np.isnan(array), default, array)
         arguments[field.key] = field.to_physics(array)
     return arguments
 

@@ -260,6 +260,20 @@ def test_matching_ideality_on_every_point_of_its_own_grid() -> None:
         np.testing.assert_allclose(matching_ideality(ff, 1.0, 25.0, T), n, rtol=1e-6)
 
 
+@pytest.mark.parametrize("factor", [0.5, 0.951, 0.99, 1.0, 1.0 + 1e-9, 1.049, 1.06, 20.0])
+def test_a_hint_changes_nothing(factor: float) -> None:
+    for n in (0.0501, 0.08, 0.9, 1.7, 40.0, 1990.0):
+        ff = float(Diode.through(1.0, 25.0, T, n, 0.3, 2e3).fill_factor())
+        hinted = float(matching_ideality(ff, 1.0, 25.0, T, 0.3, 2e3, n * factor))
+        assert hinted == pytest.approx(n, rel=1e-6)
+    for n in (0.0495, 2020.0):  # outside what is served, with and without a hint nearby
+        ff = float(ideal_fill_factor(1.0 / (n * VT)))
+        assert np.isnan(matching_ideality(ff, 1.0, 25.0, T))
+        assert np.isnan(matching_ideality(ff, 1.0, 25.0, T, near=n * factor))
+    two = matching_ideality([0.2, 0.8], 1.0, 25.0, T, near=factor)
+    np.testing.assert_allclose(two, matching_ideality([0.2, 0.8], 1.0, 25.0, T), rtol=2e-6)
+
+
 def test_matching_ideality_where_there_is_none() -> None:
     assert np.isnan(matching_ideality([0.25, 0.2, 0.0, -1.0, 1.0, 1.2, np.nan], 1.0, 25.0, T)).all()
     assert np.isnan(matching_ideality(0.8, [0.0, -1.0, np.nan], 25.0, T)).all()
