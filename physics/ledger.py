@@ -97,7 +97,7 @@ class Ledger:
     def ere(self) -> Array:
         """External radiative efficiency: measured, or exp((Voc − Voc_rad)/Vt) by reciprocity (Rau 2007)."""
         q = self.quantities
-        return np.where(np.isnan(q.ere), np.exp((q.voc - q.voc_rad) / q.vt), q.ere)
+        return np.where(np.isnan(q.ere), q.ere_reciprocal, q.ere)
 
     @property
     def closure(self) -> Array:

@@ -226,9 +226,7 @@ LINES: tuple[Line, ...] = (
             Form(
                 "{voc_rad} − {voc}", lambda q: q.voc_rad - q.voc,
                 Basis.ASSUMED, "by reciprocity, with a step edge",
-                implied=Implied(
-                    "ERE", "exp(({voc} − {voc_rad}) / {vt})", lambda q: np.exp((q.voc - q.voc_rad) / q.vt)
-                ),
+                implied=Implied("ERE", "exp(({voc} − {voc_rad}) / {vt})", lambda q: q.ere_reciprocal),
             ),
         ),
         _RAU,

@@ -48,6 +48,7 @@ class Quantities:
     voc_limit_at_jsc: Array = _quantity("V_lim(J_sc)", "V", "step-edge voltage at the cell's own current")
     j0_rad: Array = _quantity("J_0,rad", "mA cm⁻²", "radiative recombination current of the cell")
     voc_rad: Array = _quantity("V_rad", "V", "radiative voltage of the cell")
+    ere_reciprocal: Array = _quantity("ERE_rec", "", "external radiative efficiency by reciprocity (Rau 2007)")
     ere: Array = _quantity("ERE", "", "external radiative efficiency")
     ideality: Array = _quantity("n", "", "ideality factor")
     rs: Array = _quantity("R_s", "Ω cm²", "series resistance")
@@ -119,6 +120,7 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
         voc_limit_at_jsc=voc_limit_at_jsc,
         j0_rad=limit.j0,
         voc_rad=voc_limit_at_jsc,
+        ere_reciprocal=np.exp((cell.voc - voc_limit_at_jsc) / vt),
         ere=cell.ere,
         ideality=cell.ideality,
         rs=cell.rs,
