@@ -1,4 +1,9 @@
-"""From the start of the process to the first painted window, beside a bare window with the same libraries."""
+"""From the start of the process to the first painted window, beside a bare window with the same libraries.
+
+The two are not alike in one thing: the program's first window has its waterfall, but gets its two plots (and imports
+pyqtgraph for them) right after, while the bare window has two plots from the first. `ratio_with_plots` is therefore
+written beside `ratio`; it alone compares the same contents.
+"""
 
 from __future__ import annotations
 
