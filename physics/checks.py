@@ -15,6 +15,8 @@ import numpy as np
 from physics.ledger import Ledger
 from physics.units import Mask
 
+# Our own choice: 30 mV is a factor of three in the ERE at 25 °C, more than luminescence is usually uncertain by.
+_VOLTAGE_DISAGREEMENT = 0.03  # [V]
 _ROUNDING = 1.0 + 1e-9  # a cell that equals its limit is not above it
 
 
@@ -97,7 +99,7 @@ CHECKS: tuple[Check, ...] = (
     ),
     Check(
         "ere_contradicts_voc", "ere", Severity.DOUBTFUL,
-        lambda s: np.abs(s["voltage_residual"].delta) > 0.03,
+        lambda s: np.abs(s["voltage_residual"].delta) > _VOLTAGE_DISAGREEMENT,
         "This ERE and Voc disagree by more than 30 mV with a step edge; the difference stands in a line of its own.",
     ),
     Check(

@@ -242,7 +242,7 @@ def matching_ideality(
     voc, jsc, temperature, rs, rsh : array_like
         As in `Diode.through`.
     near : float
-        An ideality to look around first, where one is at hand; it saves time and changes nothing else.
+        An ideality to look around first, where one is at hand. It saves time; the result stays within the same 1e-6.
 
     Returns
     -------

@@ -183,7 +183,8 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
     series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
     if drawn:
-        series.append(Series("cell", _name(picture), cell_curve.voltage, cell_curve.current, "cell"))
+        label = f"{_short_name(picture)} (drawn, not measured)"
+        series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))
         marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
         note = (
             f"Cell: one-diode curve drawn through Voc, Jsc and FF (n = {cell_curve.ideality:.3g}), not a measured sweep"

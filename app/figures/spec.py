@@ -143,7 +143,11 @@ Side = Literal["n", "s", "ne", "nw", "se", "sw"]
 
 @dataclass(frozen=True)
 class Mark:
-    """A single point of note in data units, with the text that stands beside it (on `side`, where there is room)."""
+    """A single point of note in data units, with the text that stands beside it.
+
+    A live plot puts the text on `side`, so that it stays there while a slider moves; in files it goes where it covers
+    least.
+    """
 
     key: str
     label: str

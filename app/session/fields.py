@@ -9,7 +9,7 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import ArrayLike
 
-from app.files.numbers import NumberError, read_number, write_number
+from app.files.numbers import read_number, write_number
 from physics.units import ZERO_CELSIUS, Array
 
 
@@ -140,5 +140,3 @@ FIELDS: tuple[Field, ...] = (
 
 FIELD_BY_KEY: Mapping[str, Field] = MappingProxyType({f.key: f for f in FIELDS})
 FIELD_BY_COLUMN: Mapping[str, Field] = MappingProxyType({f.column: f for f in FIELDS})
-
-__all__ = ["FIELDS", "FIELD_BY_COLUMN", "FIELD_BY_KEY", "Field", "NumberError"]

@@ -76,8 +76,8 @@ class Outcome:
 def cell_curve(ledger: Ledger, near: float = math.nan) -> Curve:
     """One-diode curve through Voc, Jsc and FF, with the Rs and Rsh given and the ideality that meets FF.
 
-    `near` is the ideality of an earlier curve of the same cell, if there is one: a place to look first.
     Where no ideality does, the resistances are left out; below a fill factor of a quarter there is no such curve.
+    `near` is the ideality of an earlier curve of the same cell, if there is one: a place to look first.
     """
     cell, rs, rsh = ledger.cell, ledger.diode.rs, ledger.diode.rsh
     ideality = matching_ideality(cell.ff, cell.voc, cell.jsc, cell.temperature, rs, rsh, near)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import sys
 import traceback
 from collections.abc import Sequence
-from importlib.resources import as_file, files
+from importlib.resources import files
 from pathlib import Path
 from types import TracebackType
 
@@ -20,8 +20,7 @@ from app.workbench.window import Window
 
 def demo_path() -> Path:
     """The table of the invented demo cells."""
-    with as_file(files("resources") / "demo_cells.csv") as path:
-        return Path(path)
+    return Path(str(files("resources") / "demo_cells.csv"))
 
 
 def first_state(empty: bool) -> State:

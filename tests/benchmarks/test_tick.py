@@ -156,7 +156,10 @@ def test_a_tick_is_not_much_more_than_its_repaint(window: Window) -> None:
 
 
 @pytest.mark.slow
-def test_a_tick_stays_within_one_and_a_half_repaints(window: Window) -> None:
+@pytest.mark.parametrize("which", ["held", "together"])
+def test_a_tick_stays_within_one_and_a_half_repaints(window: Window, which: str) -> None:
+    """The aim is 1.5 for both. It is not reached with every panel in one frame, and that run fails until it is."""
     figures = _measure(window, rounds=20, ticks=60)
     write("tick", "long", figures)
-    assert figures["held_over_bare"] <= 1.5, figures
+    assert figures[f"{which}_over_bare"] <= 1.5, figures
+    assert figures[f"{which}_p95_ms"] < _FRAME_MS, figures
