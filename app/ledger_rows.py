@@ -49,11 +49,6 @@ class LedgerRow:
     delta_unit: str
     total: bool
 
-    def text(self, column: str) -> str:
-        """Text of one of `COLUMNS`."""
-        value: str = getattr(self, column)
-        return value
-
 
 def ledger_rows(picture: Picture) -> tuple[LedgerRow, ...]:
     """All lines that the cell has, with the totals between them."""

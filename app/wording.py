@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from dataclasses import dataclass
+from functools import lru_cache
 
 from app.files.numbers import write_number
 from app.session.appraisal import light_named
@@ -69,11 +70,13 @@ DELTA_SHOWN = {
 }
 
 
+@lru_cache(maxsize=64)  # chart, table and explanation ask for the same texts in turn
 def loss_text(loss: float, incident: float) -> str:
     """What a line takes off the efficiency, signed: a loss is negative ("−5.22 %")."""
     return f"{signed(-100.0 * loss / incident, 2)}{THIN}%"
 
 
+@lru_cache(maxsize=64)
 def delta_text(entry: Entry) -> str:
     """How far the cell falls short in the line's own figure, signed as seen from the limit ("−140.2 mV")."""
     factor, unit, decimals = DELTA_SHOWN[entry.line.factor.unit]

@@ -73,7 +73,7 @@ def factor_weights(
     """
     if attribution == "log-mean":
         powers = top[0] * top[1] * top[2], bottom[0] * bottom[1] * bottom[2]
-        whole, current, voltage, fill = log_mean(np.stack([powers[0], *top]), np.stack([powers[1], *bottom]))
+        whole, current, voltage, fill = log_mean(np.array([powers[0], *top]), np.array([powers[1], *bottom]))
         return whole / current, whole / voltage, whole / fill
     if attribution == "ladder":
         return top[1] * top[2], bottom[0] * top[2], bottom[0] * bottom[1]

@@ -289,7 +289,7 @@ def _narrowed(
     reached = fill_factors(np.exp(low + (high - low) * _GRID))
     above = (reached >= target).sum(axis=-1, keepdims=True)  # how many grid points still exceed the target
     found = (above > 0) & (above < _GRID.size)
-    above = np.clip(above, 1, _GRID.size - 1)
+    above = np.minimum(np.maximum(above, 1), _GRID.size - 1)
     found = found | within
     width = (high - low) / (_GRID.size - 1)
     start = low + width * (above - 1)

@@ -62,7 +62,8 @@ class Factor:
     weight_equation: str
 
 
-POWER = Factor("mW cm⁻²", lambda q: np.ones_like(q.incident), "")
+_ONE = np.ones(())
+POWER = Factor("mW cm⁻²", lambda q: _ONE, "")
 LIMIT_VOLTAGE = Factor("V", lambda q: q.jsc_limit, "{jsc_limit}")
 LIMIT_FILL = Factor("", lambda q: q.jsc_limit * q.voc_limit, "{jsc_limit} · {voc_limit}")
 CURRENT = Factor("mA cm⁻²", lambda q: q.weight_current, "{weight_current}")

@@ -142,15 +142,15 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
     """
     ideality = np.where(np.isnan(cell.ideality), 1.0, cell.ideality)
     has_rs, has_rsh = ~np.isnan(cell.rs), ~np.isnan(cell.rsh)
-    unity, plain = ideal_fill_factor(cell.voc / (np.stack([np.ones_like(ideality), ideality]) * vt))
+    unity, plain = ideal_fill_factor(cell.voc / np.array([vt, ideality * vt]))
 
     shunt_first = ~np.isnan(cell.pseudo_ff)
     first, diode = _with_resistances(
         cell,
         ideality,
         plain,
-        np.stack([has_rs & ~shunt_first, has_rs]),
-        np.stack([has_rsh & shunt_first, has_rsh]),
+        np.array([has_rs & ~shunt_first, has_rs]),
+        np.array([has_rsh & shunt_first, has_rsh]),
     )
     return {
         "ff_voltage": unity,

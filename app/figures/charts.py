@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from functools import lru_cache
 
 import numpy as np
 
@@ -21,6 +22,7 @@ from app.wording import (
     with_unit,
 )
 from physics.ledger import Entry, Ledger, entries_of
+from physics.limit import Limit
 from physics.lines import Basis, Family, Section
 
 STALE = "Last valid input: the fields marked in red do not enter"
@@ -183,7 +185,7 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
     series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
     if drawn:
-        label = f"{_short_name(picture)} (drawn, not measured)"
+        label = f"{_short_name(picture)} (modelled)"
         series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))
         marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
         note = (
@@ -197,6 +199,7 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
         title=f"{_name(picture)}: current density against voltage",
         x_label="Voltage (V)",
         y_label="Current density (mA cm⁻²)",
+        y_short="J (mA cm⁻²)",
         x_range=round_range(0.0, 1.02 * max(float(limit.voc), float(ledger.cell.voc))),
         y_range=round_range(0.0, 1.12 * max(float(limit.jsc), float(ledger.cell.jsc))),
         series=tuple(series),
@@ -213,26 +216,33 @@ def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency
     return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role, side=side)
 
 
+@lru_cache(maxsize=8)
+def _limits_curve(gaps: Limit) -> tuple[Series, float, float]:
+    """The curve of limits [%] over the gap [eV], the gap of its maximum, and the maximum [%]."""
+    curve = 100.0 * gaps.efficiency
+    at = int(np.argmax(curve))
+    return Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"), float(gaps.gap[at]), float(curve[at])
+
+
 def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
     """Efficiency of the limit against the gap, with the cell and its limit as marks."""
     gaps, ledger = picture.gap_curve, picture.ledger
     gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
-    curve = 100.0 * gaps.efficiency
-    best = float(gaps.gap[np.argmax(curve)])
-    high = 100 * limit > 0.92 * float(np.max(curve))
+    series, best, top = _limits_curve(gaps)
+    high = 100 * limit > 0.92 * top
     clear: Side = "ne" if high or gap > best else "se"  # over the falling side of the curve, under the rising one
     return PlotSpec(
         title=f"{_name(picture)}: efficiency against the gap",
         x_label="Gap (eV)",
         y_label="Efficiency (%)",
         x_range=(0.4, 3.0) if 0.4 <= gap <= 3.0 else round_range(min(gap, 0.4), max(gap, 3.0)),
-        y_range=round_range(0.0, 1.04 * float(np.max(curve))),
-        series=(Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"),),
+        y_range=round_range(0.0, 1.04 * top),
+        series=(series,),
         marks=(
             Mark(
                 "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, clear,
             ),
-            Mark("cell", f"{_short_name(picture)} {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
+            Mark("cell", f"cell {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
         ),
         caption=caption_of(picture) if captioned else (),
         stale=STALE if stale else "",

@@ -11,13 +11,14 @@ from PySide6.QtSvg import QSvgGenerator
 
 from app.figures.errors import FigureError
 from app.figures.palette import LIGHT, TRANSPARENT, Palette
+from app.figures.plot import natural_height as plot_height
 from app.figures.plot import paint_plot
 from app.figures.presets import MM, POINTS_PER_INCH, PRESETS, Preset
 from app.figures.sheet import Sheet, Target
 from app.figures.spec import PlotSpec, WaterfallSpec
 from app.figures.style import Style
 from app.figures.waterfall import paint_waterfall
-from app.figures.waterfall_layout import natural_height
+from app.figures.waterfall_layout import natural_height as waterfall_height
 
 __all__ = ["PRESETS", "Background", "Kind", "Preset", "Spec", "ensure_gui", "image", "page_size", "render"]
 
@@ -48,7 +49,7 @@ def page_size(spec: Spec, preset: Preset) -> tuple[float, float]:
     Parameters
     ----------
     spec : WaterfallSpec or PlotSpec
-        What is shown; a waterfall in a column takes the height its rows need.
+        What is shown; in a column it takes the height that its rows or axes and its texts need.
     preset : Preset
         Where.
 
@@ -58,10 +59,14 @@ def page_size(spec: Spec, preset: Preset) -> tuple[float, float]:
         Width and height [pt].
     """
     height = preset.height
-    if preset.tallest > preset.height and isinstance(spec, WaterfallSpec):
+    if preset.tallest > preset.height:
         probe = QImage(1, 1, QImage.Format.Format_ARGB32_Premultiplied)
         with QPainter(probe) as painter:
-            wanted = natural_height(Sheet(painter), spec, preset.width, preset.style)
+            sheet = Sheet(painter)
+            if isinstance(spec, WaterfallSpec):
+                wanted = waterfall_height(sheet, spec, preset.width, preset.style)
+            else:
+                wanted = plot_height(sheet, spec, preset.width, preset.style)
         height = min(preset.tallest, max(preset.height, wanted))
     scale = preset.dpi / POINTS_PER_INCH
     return round(preset.width * scale) / scale, round(height * scale) / scale

@@ -7,10 +7,20 @@ import math
 import numpy as np
 from PySide6.QtCore import QRectF
 
-from app.figures.blocks import LEADING, banner_lines, caption_lines, heading, paint_banner, paint_lines
+from app.figures.blocks import LEADING, banner_height, banner_lines, caption_lines, heading, paint_banner, paint_lines
 from app.figures.curves import Floats, clipped, dense
 from app.figures.palette import Palette, blend, faded
-from app.figures.plot_layout import Grid, key_corner, key_rows, key_width, layout_grid, mark_areas, mark_at, mark_labels
+from app.figures.plot_layout import (
+    Grid,
+    axis_foot,
+    key_corner,
+    key_rows,
+    key_width,
+    layout_grid,
+    mark_areas,
+    mark_at,
+    mark_labels,
+)
 from app.figures.sheet import CAP, Sheet
 from app.figures.spec import Dash, Mark, PlotSpec, Role, Series, Symbol
 from app.figures.style import Style
@@ -18,6 +28,8 @@ from app.figures.ticks import tick_texts
 
 #: A text further from its mark than this, in type sizes, is tied to it by a thin line.
 _LEADER = 0.9
+#: Height of the frame as a share of the page's width, where the page takes the height it needs.
+_FRAME_SHAPE = 0.5
 
 
 def dashes(dash: Dash, width: float) -> tuple[float, ...]:
@@ -80,6 +92,18 @@ def paint_plot(sheet: Sheet, spec: PlotSpec, rect: QRectF, style: Style, palette
         _paint_key(sheet, [[series] for series in named], key.left(), key.top(), style, shown, bool(spec.stale))
     elif named:
         _paint_key(sheet, rows, left, bottom - below, style, shown, bool(spec.stale))
+
+
+def natural_height(sheet: Sheet, spec: PlotSpec, width: float, style: Style) -> float:
+    """Height at which a plot looks well at a given width: the axis names fit, and all texts [units]."""
+    room = width - 2 * style.margin
+    banner = banner_height(style, len(banner_lines(sheet, spec.stale, room, style)))
+    lines, size = heading(sheet, spec.title, style.title, style.base, room)
+    head = banner + len(lines) * size * LEADING + style.base * 0.75
+    caption = len(caption_lines(sheet, spec.caption, style, room)) * style.caption * LEADING + style.base * 0.3
+    key = len(key_rows(sheet, [series for series in spec.series if series.label], room, style)) * style.small * 1.5
+    frame = max(room * _FRAME_SHAPE, sheet.width(spec.y_label, style.small) + style.small)
+    return 2 * style.margin + head + frame + axis_foot(style) + key + caption
 
 
 def _ink(role: Role, palette: Palette, stale: bool) -> str:
@@ -174,7 +198,8 @@ def _paint_grid(sheet: Sheet, spec: PlotSpec, grid: Grid, left: float, style: St
     baseline = frame.bottom() + reach + style.small * (0.25 + 1.3 + CAP)
     label = sheet.fit(spec.x_label, style.small, frame.right() - x + style.base * 0.4)
     sheet.text(x, baseline, label, style.small, palette.ink)
-    text = sheet.fit(spec.y_label, style.small, frame.height())
+    name = spec.y_name(sheet.width(spec.y_label, style.small) <= frame.height())
+    text = sheet.fit(name, style.small, frame.height())
     sheet.turned_text(left + CAP * style.small / 2, frame.center().y(), text, style.small, palette.ink)
 
 

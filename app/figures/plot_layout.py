@@ -13,6 +13,8 @@ from app.figures.spec import Mark, PlotSpec, Series
 from app.figures.style import Style
 from app.figures.ticks import axis_ticks, tick_texts
 
+#: Length of a tick, in type sizes.
+_TICK = 0.35
 #: How far from its mark a text may stand, in steps of about one line.
 _DISTANCES = (1.0, 1.2, 1.45, 1.75, 2.2, 3.0, 4.0, 5.5, 7.5, 10.0)
 
@@ -38,11 +40,15 @@ class Grid:
         return self.frame.bottom() - self.frame.height() * (value - low) / ((high - low) or 1.0)
 
 
+def axis_foot(style: Style) -> float:
+    """Height below the frame for ticks, numbers and name of the axis [units]."""
+    return style.base * _TICK + style.small * 2.75
+
+
 def layout_grid(sheet: Sheet, spec: PlotSpec, area: QRectF, style: Style) -> Grid:
     """Place the frame in an area, with room for the numbers and names of both axes, and choose the ticks."""
-    reach = style.base * 0.35
-    foot = reach + style.small * 2.75
-    height = max(style.base, area.height() - foot)
+    reach = style.base * _TICK
+    height = max(style.base, area.height() - axis_foot(style))
     y_ticks = axis_ticks(*spec.y_range, max(3, int(height / (style.small * 2.6))))
     texts = tick_texts(y_ticks)
     widest = max((sheet.width(text, style.small) for text in texts), default=0.0)

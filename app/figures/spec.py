@@ -167,6 +167,8 @@ class PlotSpec:
     ----------
     title, x_label, y_label : str
         Headline and axis names with their units.
+    y_short : str
+        The name of the y axis for a place where it does not fit; empty where it is short already.
     x_range, y_range : (float, float)
         What the axes span, in data units.
     series : tuple of Series
@@ -188,3 +190,8 @@ class PlotSpec:
     marks: tuple[Mark, ...] = field(default_factory=tuple)
     caption: tuple[str, ...] = ()
     stale: str = ""
+    y_short: str = ""
+
+    def y_name(self, fits: bool) -> str:
+        """Name of the y axis where the full one `fits`, or does not."""
+        return self.y_label if fits or not self.y_short else self.y_short

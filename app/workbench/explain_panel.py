@@ -6,7 +6,7 @@ import math
 import re
 from dataclasses import dataclass
 
-from PySide6.QtCore import QPointF, Qt
+from PySide6.QtCore import QPointF, QRect, Qt
 from PySide6.QtGui import (
     QAction,
     QFont,
@@ -36,9 +36,9 @@ def plain_explanation(explanation: Explanation) -> str:
     return "\n".join(part for part in parts if part)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class _Run:
-    """A piece of text at a place, in one of the three fonts."""
+    """A piece of text at a place relative to its block, in one of the three fonts."""
 
     x: float
     y: float
@@ -46,8 +46,24 @@ class _Run:
     font: int
 
 
+@dataclass(frozen=True, slots=True)
+class _Block:
+    """A paragraph broken into lines: its runs and its size [px]."""
+
+    runs: tuple[_Run, ...]
+    width: float
+    height: float
+
+    def area(self, x: float, y: float) -> QRect:
+        """Where it is painted when placed at (x, y), with a rim for what reaches beyond."""
+        return QRect(int(x) - 2, int(y) - 1, int(self.width) + 5, int(self.height) + 3)
+
+
 class _Setter:
-    """Sets an explanation in lines of a given width: a few dozen runs, without the cost of a rich-text document."""
+    """Sets an explanation in lines of a given width: a few dozen runs, without the cost of a rich-text document.
+
+    Paragraphs are kept as set: when a number moves, most of them read as before.
+    """
 
     NORMAL, BOLD, SMALL = 0, 1, 2
 
@@ -60,81 +76,114 @@ class _Setter:
         self._ascent = self._metrics[0].ascent()
         self._line = math.ceil(self._metrics[0].height()) + 1.0
         self._drop = self._metrics[0].descent() * 0.7
-        self._widths: dict[tuple[int, str], float] = {}
-        self.runs: list[_Run] = []
-        self.height = 0.0
+        self._blank = self._metrics[0].horizontalAdvance(" ")
+        # Where all digits are as wide as a zero, a number on the move keeps the width of its shape.
+        even = all(len({metrics.horizontalAdvance(digit) for digit in "0123456789"}) == 1 for metrics in self._metrics)
+        self._shape = str.maketrans("123456789", "000000000") if even else {}
+        self._extents: dict[tuple[int, str], float] = {}
+        self._blocks: dict[tuple[str, float, int], _Block] = {}
 
-    def set(self, explanation: Explanation | None, width: float) -> None:
-        """Lay out an explanation, or the hint, in `width` pixels."""
-        self.runs, self.height = [], 4.0
-        if len(self._widths) > 4000:
-            self._widths.clear()
+    def set(self, explanation: Explanation | None, width: float) -> list[tuple[float, float, _Block]]:
+        """Set an explanation, or the hint, in `width` pixels: blocks with their left and upper edges."""
+        if len(self._extents) > 4000 or len(self._blocks) > 1000:
+            self._extents.clear()
+            self._blocks.clear()
         room = width - 2 * _MARGIN
+        page = _Page()
         if explanation is None:
-            self._paragraph(_HINT, room)
-            return
-        self._paragraph(explanation.title, room, self.BOLD)
-        self._paragraph(explanation.amount, room)
-        self._gap(bool(explanation.steps))
+            page.add(_MARGIN, self._paragraph(_HINT, room))
+            return page.placed
+        page.add(_MARGIN, self._paragraph(explanation.title, room, self.BOLD))
+        page.add(_MARGIN, self._paragraph(explanation.amount, room))
+        page.skip(0.5 * self._line if explanation.steps else 0.0)
         for step in explanation.steps:
-            self._paragraph(step, room)
-        self._gap(bool(explanation.given))
-        self._columns(explanation, room)
-        self._gap(True)
+            page.add(_MARGIN, self._paragraph(step, room))
+        page.skip(0.5 * self._line if explanation.given else 0.0)
+        self._columns(page, explanation, room)
+        page.skip(0.5 * self._line)
         if explanation.basis:
-            self._paragraph(f"Basis: {explanation.basis}", room)
-        self._paragraph(f"Source: {explanation.source}", room)
-        self.height += 4.0
+            page.add(_MARGIN, self._paragraph(f"Basis: {explanation.basis}", room))
+        page.add(_MARGIN, self._paragraph(f"Source: {explanation.source}", room))
+        return page.placed
 
-    def _gap(self, wanted: bool) -> None:
-        self.height += 0.5 * self._line if wanted else 0.0
-
-    def _width(self, text: str, font: int) -> float:
-        key = (font, text)
-        if key not in self._widths:
-            self._widths[key] = self._metrics[font].horizontalAdvance(text)
-        return self._widths[key]
-
-    def _pieces(self, text: str, font: int) -> list[tuple[str, int]]:
-        """A text cut at its subscripts."""
-        if "_" not in text:
-            return [(text, font)]
-        parts = _SUBSCRIPT.split(text)
-        return [(part, self.SMALL if k % 2 else font) for k, part in enumerate(parts) if part]
-
-    def _extent(self, text: str, font: int) -> float:
-        return sum(self._width(piece, kind) for piece, kind in self._pieces(text, font))
-
-    def _put(self, x: float, text: str, font: int) -> float:
-        """Place a text on the present line; where it ends."""
-        base = self.height + self._ascent
-        for piece, kind in self._pieces(text, font):
-            self.runs.append(_Run(x, base + (self._drop if kind == self.SMALL else 0.0), piece, kind))
-            x += self._width(piece, kind)
-        return x
-
-    def _paragraph(self, text: str, room: float, font: int = NORMAL, indent: float = 0.0) -> None:
-        """Place a text, broken at blanks where it is too wide."""
-        line = ""
-        for word in text.split(" "):
-            longer = f"{line} {word}" if line else word
-            if line and self._extent(longer, font) > room - indent:
-                self._put(_MARGIN + indent, line, font)
-                self.height += self._line
-                line = word
-            else:
-                line = longer
-        self._put(_MARGIN + indent, line, font)
-        self.height += self._line
-
-    def _columns(self, explanation: Explanation, room: float) -> None:
+    def _columns(self, page: _Page, explanation: Explanation, room: float) -> None:
+        """What enters: symbol, value flush right, and what it is."""
         given = explanation.given
         symbols = max((self._extent(g.symbol, self.NORMAL) for g in given), default=0.0) + 12.0
         values = max((self._extent(g.value, self.NORMAL) for g in given), default=0.0)
         for g in given:
-            self._put(_MARGIN, g.symbol, self.NORMAL)
-            self._put(_MARGIN + symbols + values - self._extent(g.value, self.NORMAL), g.value, self.NORMAL)
-            self._paragraph(g.title, room, indent=symbols + values + 12.0)
+            page.beside(_MARGIN, self._paragraph(g.symbol, room))
+            page.beside(_MARGIN + symbols + values - self._extent(g.value, self.NORMAL), self._paragraph(g.value, room))
+            titles = symbols + values + 12.0
+            page.add(_MARGIN + titles, self._paragraph(g.title, room - titles))
+
+    @staticmethod
+    def _pieces(text: str, font: int) -> list[tuple[str, int]]:
+        """A text cut at its subscripts."""
+        if "_" not in text:
+            return [(text, font)]
+        parts = _SUBSCRIPT.split(text)
+        return [(part, _Setter.SMALL if k % 2 else font) for k, part in enumerate(parts) if part]
+
+    def _extent(self, text: str, font: int) -> float:
+        key = (font, text.translate(self._shape))
+        known = self._extents.get(key)
+        if known is None:
+            pieces = self._pieces(text, font)
+            known = sum(self._metrics[kind].horizontalAdvance(piece) for piece, kind in pieces)
+            self._extents[key] = known
+        return known
+
+    def _paragraph(self, text: str, room: float, font: int = NORMAL) -> _Block:
+        """A text, broken at blanks where it is too wide."""
+        key = (text, room, font)
+        block = self._blocks.get(key)
+        if block is None:
+            runs: list[_Run] = []
+            width = 0.0
+            lines = [text] if self._extent(text, font) <= room else self._broken(text, room, font)
+            for at, line in enumerate(lines):
+                x, base = 0.0, at * self._line + self._ascent
+                pieces = self._pieces(line, font)
+                for piece, kind in pieces:
+                    runs.append(_Run(x, base + (self._drop if kind == self.SMALL else 0.0), piece, kind))
+                    x += self._extent(piece, kind) if len(pieces) > 1 else self._extent(line, font)
+                width = max(width, x)
+            block = self._blocks[key] = _Block(tuple(runs), width, len(lines) * self._line)
+        return block
+
+    def _broken(self, text: str, room: float, font: int) -> list[str]:
+        lines: list[str] = []
+        line, width = "", 0.0
+        for word in text.split(" "):
+            wide = self._extent(word, font)
+            if line and width + self._blank + wide > room:
+                lines.append(line)
+                line, width = word, wide
+            else:
+                line, width = (f"{line} {word}", width + self._blank + wide) if line else (word, wide)
+        return [*lines, line]
+
+
+class _Page:
+    """Blocks placed below each other."""
+
+    def __init__(self) -> None:
+        self.placed: list[tuple[float, float, _Block]] = []
+        self._y = 4.0
+
+    def add(self, x: float, block: _Block) -> None:
+        """Place a block and go below it."""
+        self.beside(x, block)
+        self._y += block.height
+
+    def beside(self, x: float, block: _Block) -> None:
+        """Place a block where the next one will stand beside it."""
+        self.placed.append((x, self._y, block))
+
+    def skip(self, height: float) -> None:
+        """Leave a blank."""
+        self._y += height
 
 
 class ExplainPanel(QAbstractScrollArea):
@@ -147,6 +196,7 @@ class ExplainPanel(QAbstractScrollArea):
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
         self.setAccessibleName("How the picked line was computed")
         self._setter = _Setter(self.font())
+        self._placed: list[tuple[float, float, _Block]] = []
         self._shown: Explanation | None = None
         copy = QAction("&Copy the explanation", self)
         copy.setShortcut(QKeySequence(QKeySequence.StandardKey.Copy))
@@ -169,15 +219,28 @@ class ExplainPanel(QAbstractScrollArea):
             self._set()
 
     def _set(self) -> None:
-        self._setter.set(self._shown, self.viewport().width())
+        previous, self._placed = self._placed, self._setter.set(self._shown, self.viewport().width())
+        _, top, last = self._placed[-1]
         room = self.viewport().height()
-        excess = max(0, math.ceil(self._setter.height) - room)
+        excess = max(0, math.ceil(top + last.height + 4.0) - room)
         bar = self.verticalScrollBar()
         if bar.maximum() != excess:
             bar.setRange(0, excess)
             bar.setPageStep(room)
             bar.setSingleStep(self.fontMetrics().height())
-        self.viewport().update()
+        self._show_changes(previous)
+
+    def _show_changes(self, previous: list[tuple[float, float, _Block]]) -> None:
+        """Ask for a repaint of the blocks that read otherwise than before, or of all."""
+        view = self.viewport()
+        if len(previous) != len(self._placed):
+            view.update()
+            return
+        shift = self.verticalScrollBar().value()
+        for before, now in zip(previous, self._placed, strict=True):
+            if before != now:
+                for x, y, block in (before, now):
+                    view.update(block.area(x, y - shift))
 
     def copy(self) -> None:
         """Put the text on the clipboard."""
@@ -192,10 +255,13 @@ class ExplainPanel(QAbstractScrollArea):
         """Draw the text."""
         with QPainter(self.viewport()) as painter:
             painter.setPen(self.palette().color(QPalette.ColorRole.WindowText))
-            painter.translate(0.0, -self.verticalScrollBar().value())
-            used = -1
-            for run in self._setter.runs:
-                if run.font != used:
-                    painter.setFont(self._setter.fonts[run.font])
-                    used = run.font
-                painter.drawText(QPointF(run.x, run.y), run.text)
+            shift, changed, used = self.verticalScrollBar().value(), event.region(), -1
+            for left, top, block in self._placed:
+                top -= shift
+                if not changed.intersects(block.area(left, top)):
+                    continue
+                for run in block.runs:
+                    if run.font != used:
+                        painter.setFont(self._setter.fonts[run.font])
+                        used = run.font
+                    painter.drawText(QPointF(left + run.x, top + run.y), run.text)

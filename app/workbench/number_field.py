@@ -147,7 +147,7 @@ class NumberField(QWidget):
 
     def show_value(self, value: Value) -> None:
         """Show a value. What the user is typing stays as typed as long as it means that value."""
-        if value == self._shown and not self._touched:
+        if not self._touched and (value is self._shown or value == self._shown):
             return
         self._shown, self._touched = value, False
         if self._read() != value:

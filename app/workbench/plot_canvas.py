@@ -5,25 +5,30 @@ from __future__ import annotations
 import numpy as np
 import pyqtgraph as pg
 from PySide6.QtCore import Qt
-from PySide6.QtGui import QColor, QFont, QPen, QTransform
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPen, QResizeEvent, QTransform
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsSimpleTextItem, QWidget
 
 from app.figures.fonts import chart_font
 from app.figures.spec import Mark, PlotSpec, Series
 from app.workbench.theme import Theme
+from physics.units import Array
 
 _DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
 _SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
 _LABEL_PX = 12
 
 
+def _same(before: Array, now: Array) -> bool:
+    return before is now or np.array_equal(before, now, equal_nan=True)
+
+
 class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annotations
     """Draws a `PlotSpec`. The wheel zooms and dragging moves; a double click shows the whole plot again."""
 
     def __init__(self, title: str, theme: Theme, parent: QWidget | None = None) -> None:
+        self._spec: PlotSpec | None = None
         super().__init__(parent)
         self._theme = theme
-        self._spec: PlotSpec | None = None
         self._ranges: tuple[tuple[float, float], tuple[float, float]] | None = None
         self._curves: dict[str, pg.PlotCurveItem] = {}
         self._marks: dict[str, pg.ScatterPlotItem] = {}
@@ -63,6 +68,12 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             self._show_mark(mark)
         self._hide_missing(spec)
 
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Name the axes in full where there is room."""
+        super().resizeEvent(event)
+        if self._spec is not None:
+            self._label_axes(self._spec)
+
     def _show_all(self) -> None:
         if self._ranges is not None:
             (left, right), (bottom, top) = self._ranges
@@ -72,7 +83,9 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         palette = self._theme.palette
         style = {"color": palette.ink, "font-size": "8pt"}
         item = self.getPlotItem()
-        for name, text in (("bottom", spec.x_label), ("left", spec.y_label)):
+        wide = QFontMetricsF(chart_font(_LABEL_PX, bold=True)).horizontalAdvance(spec.y_label)
+        room = self.height() - item.getAxis("bottom").height()
+        for name, text in (("bottom", spec.x_label), ("left", spec.y_name(wide <= room))):
             axis = item.getAxis(name)
             axis.setLabel(text, **style)
             axis.resizeEvent()  # the label is centred by its width of then only when the axis is resized
@@ -84,7 +97,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             self._curves[series.key] = curve
             self.addItem(curve, ignoreBounds=True)
         x, y = curve.getData()
-        if x is None or not (np.array_equal(x, series.x) and np.array_equal(y, series.y, equal_nan=True)):
+        if x is None or not (_same(x, series.x) and _same(y, series.y)):
             curve.setData(series.x, series.y)
         curve.setVisible(True)
 

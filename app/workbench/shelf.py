@@ -28,18 +28,23 @@ class ShelfModel(QAbstractListModel):
         """The cells as shown."""
         return self._cells
 
-    def show_cells(self, cells: tuple[CellEntry, ...]) -> None:
-        """Show these cells; rows that did not change are left alone."""
+    def show_cells(self, cells: tuple[CellEntry, ...]) -> list[int]:
+        """Show these cells; tells the rows that read otherwise now, of cells that were there before.
+
+        `dataChanged` would not do: a list view answers it by laying out every row anew.
+        """
         previous, self._cells = self._cells, cells
         if [c.ident for c in previous] != [c.ident for c in cells]:
             self._cells = previous
             self.beginResetModel()
             self._cells = cells
             self.endResetModel()
-            return
-        for row, (before, now) in enumerate(zip(previous, cells, strict=True)):
-            if before is not now and self._texts.get(now.ident) != self._text(now):
-                self.dataChanged.emit(self.index(row), self.index(row))
+            return []
+        return [
+            row
+            for row, (before, now) in enumerate(zip(previous, cells, strict=True))
+            if before is not now and self._texts.get(now.ident) != self._text(now)
+        ]
 
     def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008 (Qt's own signature)
         """Number of cells."""
@@ -99,7 +104,8 @@ class Shelf(QListView):
 
     def show_state(self, state: State) -> None:
         """Show the shelf with its picked cell."""
-        self._model.show_cells(state.cells)
+        for row in self._model.show_cells(state.cells):
+            self.update(self._model.index(row))
         if state.picked is not None:
             row = state.position(state.picked)
             if self.currentIndex().row() != row:

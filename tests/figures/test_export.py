@@ -15,6 +15,7 @@ from PySide6.QtSvg import QSvgRenderer
 
 from app.figures.errors import FigureError
 from app.figures.export import PRESETS, Kind, image, page_size, render
+from app.figures.sheet import Sheet
 from app.figures.spec import PlotSpec, WaterfallSpec
 
 from .samples import GAINS, JV, LONG_NAMES, MARKUP, PEROVSKITE, SILICON, SIXTEEN
@@ -59,6 +60,16 @@ def test_a_column_is_as_tall_as_its_rows_need() -> None:
     few, many = (page_size(spec, PRESETS["column-300"])[1] for spec in (GAINS, SIXTEEN))
     assert few < many
     assert page_size(LONG_NAMES, PRESETS["column-300"])[1] / 72 * 25.4 <= 110.1
+
+
+@pytest.mark.parametrize("preset", PRESETS)
+def test_the_names_of_the_axes_are_whole_also_above_a_long_caption(preset: str) -> None:
+    spec = replace(JV, y_label="Current density (mA cm⁻²)", caption=("a word " * 30,))
+    sheets: list[Sheet] = []
+    image(spec, PRESETS[preset], record=sheets)
+    texts = [mark.text for mark in sheets[0].marks or ()]
+    assert spec.y_label in texts
+    assert spec.x_label in texts
 
 
 @pytest.mark.parametrize("preset", PRESETS)

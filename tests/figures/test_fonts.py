@@ -1,9 +1,10 @@
 from __future__ import annotations
 
+import re
 from importlib.resources import files
 
 import pytest
-from PySide6.QtGui import QFontInfo, QRawFont
+from PySide6.QtGui import QFontInfo, QFontMetricsF, QRawFont
 
 from app.figures.fonts import chart_font, families, missing_signs
 
@@ -19,6 +20,17 @@ def test_no_sign_the_charts_need_is_missing() -> None:
 
 def test_a_sign_no_bundled_font_has_is_named() -> None:
     assert missing_signs("a漢b") == "漢"
+
+
+@pytest.mark.parametrize("hinted", [False, True])
+@pytest.mark.parametrize("bold", [False, True])
+@pytest.mark.parametrize("pixels", [9, 11, 12, 15, 28, 133])
+def test_all_digits_are_as_wide_as_a_zero(pixels: int, bold: bool, hinted: bool) -> None:
+    """Texts are measured by their shape, with zeros for all digits."""
+    metrics = QFontMetricsF(chart_font(pixels, bold, hinted))
+    for text in ("−17.71 %", "711.4 mV", "Plover 17", "1.1", "4.7×10⁻⁷", "a1b7", "11171"):
+        shape = re.sub("[1-9]", "0", text)
+        assert metrics.horizontalAdvance(text) == metrics.horizontalAdvance(shape), text
 
 
 @pytest.mark.parametrize("bold", [False, True])

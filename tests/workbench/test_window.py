@@ -146,8 +146,8 @@ def test_a_fault_is_told_beside_its_field_and_the_picture_stays(window: Window) 
     assert window.actions_.export.isEnabled()
 
 
-def test_a_drawn_curve_is_not_passed_off_as_a_measured_one(window: Window) -> None:
-    assert "drawn, not measured" in window.jv_plot.key.text()
+def test_a_drawn_curve_is_not_passed_off_as_measured(window: Window) -> None:
+    assert "(modelled)" in window.jv_plot.key.text()
 
 
 def test_nothing_modal_comes_up_while_typing(window: Window) -> None:
