@@ -31,6 +31,10 @@ class Illumination(Protocol):
     def gap_range(self) -> tuple[float, float]:
         """Gaps for which the light is known [eV]."""
 
+    @property
+    def breaks(self) -> Array:
+        """Wavelengths between which the photon current is smooth [nm]."""
+
     def photon_current_above(self, gap: ArrayLike) -> Array:
         """Current of all photons above `gap` [eV] at one electron each [mA cm⁻²]."""
 
@@ -121,6 +125,11 @@ class Spectrum:
     def gap_range(self) -> tuple[float, float]:
         """Gaps that the table covers [eV]."""
         return (EV_NM / float(self.wavelength[-1]), EV_NM / float(self.wavelength[0]))
+
+    @property
+    def breaks(self) -> Array:
+        """Wavelengths between which the table is linear [nm]."""
+        return self.wavelength
 
     def photon_current_above(self, gap: ArrayLike) -> Array:
         """Current of all photons above a gap at one electron each, exact for the piecewise-linear table.
