@@ -37,6 +37,18 @@ class Cell:
         Series and shunt resistance [Ω cm²]; NaN where not known.
     pseudo_ff : array_like
         Fill factor without series resistance, 0 to 1; NaN where not measured.
+    eqe_above, eqe_below : array_like
+        Current of the EQE under this light, from photons above and below the gap [mA cm⁻²]; NaN where there is no EQE
+        (`physics.quantum.collected_current`).
+    reflected : array_like
+        Photons above the gap that are reflected, as a current [mA cm⁻²]; NaN where no reflectance was measured.
+    j0_rad : array_like
+        Radiative recombination current by the EQE [mA cm⁻²], for as many faces as the limit emits from; NaN where
+        there is no EQE (`physics.quantum.radiative_current`).
+    tail_share : array_like
+        Share of `j0_rad` that rests on an extrapolated tail, 0 to 1.
+    fitted : array_like
+        1 where ideality and resistances come from a fit to a J–V sweep, 0 where they were measured otherwise.
     """
 
     gap: Array
@@ -50,6 +62,12 @@ class Cell:
     rs: Array
     rsh: Array
     pseudo_ff: Array
+    eqe_above: Array
+    eqe_below: Array
+    reflected: Array
+    j0_rad: Array
+    tail_share: Array
+    fitted: Array
 
     @classmethod
     def of(
@@ -66,6 +84,12 @@ class Cell:
         rs: ArrayLike = UNKNOWN,
         rsh: ArrayLike = UNKNOWN,
         pseudo_ff: ArrayLike = UNKNOWN,
+        eqe_above: ArrayLike = UNKNOWN,
+        eqe_below: ArrayLike = UNKNOWN,
+        reflected: ArrayLike = UNKNOWN,
+        j0_rad: ArrayLike = UNKNOWN,
+        tail_share: ArrayLike = 0.0,
+        fitted: ArrayLike = 0.0,
     ) -> Cell:
         """Cells from scalars and arrays of mutually broadcastable shapes; units as the class says.
 
@@ -74,8 +98,8 @@ class Cell:
         ValueError
             When the shapes do not broadcast.
         """
-        given = (gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff)
-        return cls(*aligned(*given))
+        known = (gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff)
+        return cls(*aligned(*known, eqe_above, eqe_below, reflected, j0_rad, tail_share, fitted))
 
     @property
     def shape(self) -> tuple[int, ...]:

@@ -159,17 +159,32 @@ _SQ = "Shockley and Queisser 1961, doi:10.1063/1.1736034"
 _RAU = "Rau 2007, doi:10.1103/PhysRevB.76.085303"
 _GREEN = "exact one-diode curve; approximations by Green 1981, doi:10.1016/0038-1101(81)90062-9"
 _DIFFERENCE = "difference of measured figures"
+_REFLECTANCE = "photon current times the measured reflectance"
+_FIT = "one-diode fit to the sweep"
 
-_HAS_ERE, _HAS_PFF = _known("ere"), _known("pseudo_ff")
+_HAS_ERE, _HAS_PFF, _HAS_EQE, _HAS_R = (_known(name) for name in ("ere", "pseudo_ff", "jsc_eqe", "jsc_reflected"))
 _HAS_N, _HAS_RS, _HAS_RSH = _known("ideality"), _known("rs"), _known("rsh")
+
+
+def _both(*masks: Callable[[Quantities], Mask]) -> Callable[[Quantities], Mask]:
+    return lambda q: np.logical_and.reduce([mask(q) for mask in masks])
+
+
+def _fitted(q: Quantities) -> Mask:
+    return q.fitted > 0
+
+
+def _tail_extrapolated(q: Quantities) -> Mask:
+    return _HAS_EQE(q) & (q.tail_share > 0)
 
 
 def _with_or_without_ideality(
     equation: str, delta: Callable[[Quantities], Array], known: Callable[[Quantities], Mask]
-) -> tuple[Form, Form]:
+) -> tuple[Form, ...]:
     """A resistance line rests on the cell's ideality; where that is unknown, on an ideal diode."""
     return (
-        Form(equation, delta, Basis.MEASURED, "", lambda q: known(q) & _HAS_N(q)),
+        Form(equation, delta, Basis.FITTED, _FIT, _both(known, _HAS_N, _fitted)),
+        Form(equation, delta, Basis.MEASURED, "", _both(known, _HAS_N)),
         Form(equation, delta, Basis.ASSUMED, "n = 1, as no ideality is given", known),
     )
 
@@ -201,7 +216,45 @@ LINES: tuple[Line, ...] = (
     ),
     Line(
         "current", "Current not collected", "current", Family.SPECTRAL, Section.LIMIT_TO_CELL, CURRENT,
-        (Form("{jsc_limit} − {jsc}", lambda q: q.jsc_limit - q.jsc, Basis.MEASURED),),
+        (Form("{jsc_limit} − {jsc}", lambda q: q.jsc_limit - q.jsc, Basis.MEASURED, "", lambda q: ~_HAS_EQE(q)),),
+        _DIFFERENCE,
+    ),
+    Line(
+        "reflection", "Reflection", "reflection", Family.SPECTRAL, Section.LIMIT_TO_CELL, CURRENT,
+        (Form(
+            "{jsc_reflected}", lambda q: q.jsc_reflected,
+            Basis.MEASURED, "from the reflectance", _both(_HAS_EQE, _HAS_R),
+        ),),
+        _REFLECTANCE,
+    ),
+    Line(
+        "uncollected", "Current not collected above the gap", "uncollected", Family.SPECTRAL,
+        Section.LIMIT_TO_CELL, CURRENT,
+        (
+            Form(
+                "{jsc_limit} − {jsc_eqe} − {jsc_reflected}", lambda q: q.jsc_limit - q.jsc_eqe - q.jsc_reflected,
+                Basis.MEASURED, "from the EQE, less the reflection", _both(_HAS_EQE, _HAS_R),
+            ),
+            Form(
+                "{jsc_limit} − {jsc_eqe}", lambda q: q.jsc_limit - q.jsc_eqe,
+                Basis.MEASURED, "from the EQE", _HAS_EQE,
+            ),
+        ),
+        _DIFFERENCE,
+    ),
+    Line(
+        "sub_gap_current", "Current from below the gap", "below-gap current", Family.SPECTRAL,
+        Section.LIMIT_TO_CELL, CURRENT,
+        (Form("−{jsc_sub_gap}", lambda q: -q.jsc_sub_gap, Basis.MEASURED, "from the EQE", _HAS_EQE),),
+        _DIFFERENCE,
+    ),
+    Line(
+        "current_mismatch", "EQE current against the sweep's", "EQE against J–V", Family.SPECTRAL,
+        Section.LIMIT_TO_CELL, CURRENT,
+        (Form(
+            "{jsc_eqe} + {jsc_sub_gap} − {jsc}", lambda q: q.jsc_eqe + q.jsc_sub_gap - q.jsc,
+            Basis.MEASURED, "EQE and J–V", _HAS_EQE,
+        ),),
         _DIFFERENCE,
     ),
     Line(
@@ -213,10 +266,14 @@ LINES: tuple[Line, ...] = (
     Line(
         "voltage_edge", "Voltage, from a soft edge", "soft edge", Family.VOLTAGE,
         Section.LIMIT_TO_CELL, VOLTAGE,
-        (Form(
-            "{voc_limit_at_jsc} − {voc_rad}", lambda q: q.voc_limit_at_jsc - q.voc_rad,
-            Basis.ASSUMED, "step edge",
-        ),),
+        tuple(
+            Form("{voc_limit_at_jsc} − {voc_rad}", lambda q: q.voc_limit_at_jsc - q.voc_rad, basis, reason, applies)
+            for basis, reason, applies in (
+                (Basis.FITTED, "from the EQE, its tail extrapolated", _tail_extrapolated),
+                (Basis.MEASURED, "from the EQE", _HAS_EQE),
+                (Basis.ASSUMED, "step edge", None),
+            )
+        ),
         "Rau et al. 2017, doi:10.1103/PhysRevApplied.7.044016",
     ),
     Line(
@@ -224,10 +281,16 @@ LINES: tuple[Line, ...] = (
         Section.LIMIT_TO_CELL, VOLTAGE,
         (
             Form("−{vt} · ln {ere}", lambda q: -q.vt * np.log(q.ere), Basis.MEASURED, "from the ERE", _HAS_ERE),
-            Form(
-                "{voc_rad} − {voc}", lambda q: q.voc_rad - q.voc,
-                Basis.ASSUMED, "by reciprocity, with a step edge",
-                implied=Implied("ERE", "exp(({voc} − {voc_rad}) / {vt})", lambda q: q.ere_reciprocal),
+            *(
+                Form(
+                    "{voc_rad} − {voc}", lambda q: q.voc_rad - q.voc, basis, reason, applies,
+                    implied=Implied("ERE", "exp(({voc} − {voc_rad}) / {vt})", lambda q: q.ere_reciprocal),
+                )
+                for basis, reason, applies in (
+                    (Basis.FITTED, "by reciprocity, with the EQE and its extrapolated tail", _tail_extrapolated),
+                    (Basis.MEASURED, "by reciprocity, with the EQE", _HAS_EQE),
+                    (Basis.ASSUMED, "by reciprocity, with a step edge", None),
+                )
             ),
         ),
         _RAU,
@@ -235,10 +298,17 @@ LINES: tuple[Line, ...] = (
     Line(
         "voltage_residual", "Voltage not accounted for", "voltage, rest", Family.VOLTAGE,
         Section.LIMIT_TO_CELL, VOLTAGE,
-        (Form(
-            "{voc_rad} + {vt} · ln {ere} − {voc}", lambda q: q.voc_rad + q.vt * np.log(q.ere) - q.voc,
-            Basis.MEASURED, "the rest, with the edge taken as a step", _HAS_ERE,
-        ),),
+        tuple(
+            Form(
+                "{voc_rad} + {vt} · ln {ere} − {voc}", lambda q: q.voc_rad + q.vt * np.log(q.ere) - q.voc,
+                basis, reason, applies,
+            )
+            for basis, reason, applies in (
+                (Basis.FITTED, "the rest, with the EQE and its extrapolated tail", _both(_HAS_ERE, _tail_extrapolated)),
+                (Basis.MEASURED, "the rest, with the EQE", _both(_HAS_ERE, _HAS_EQE)),
+                (Basis.MEASURED, "the rest, with the edge taken as a step", _HAS_ERE),
+            )
+        ),
         _RAU,
     ),
     Line(
@@ -249,10 +319,15 @@ LINES: tuple[Line, ...] = (
     ),
     Line(
         "fill_ideality", "Fill factor, from the ideality", "ideality", Family.FILL, Section.LIMIT_TO_CELL, FILL,
-        (Form(
-            "{ff_voltage} − {ff_ideality}", lambda q: q.ff_voltage - q.ff_ideality,
-            Basis.MEASURED, "", _HAS_N,
-        ),),
+        (
+            Form(
+                "{ff_voltage} − {ff_ideality}", lambda q: q.ff_voltage - q.ff_ideality,
+                Basis.FITTED, _FIT, _both(_HAS_N, _fitted),
+            ),
+            Form(
+                "{ff_voltage} − {ff_ideality}", lambda q: q.ff_voltage - q.ff_ideality, Basis.MEASURED, "", _HAS_N,
+            ),
+        ),
         _GREEN,
     ),
     Line(

@@ -46,6 +46,9 @@ class Quantities:
     ff: Array = _quantity("FF", "", "fill factor of the cell")
     power: Array = _quantity("P_cell", "mW cm⁻²", "power of the cell")
     voc_limit_at_jsc: Array = _quantity("V_lim(J_sc)", "V", "step-edge voltage at the cell's own current")
+    jsc_eqe: Array = _quantity("J_EQE", "mA cm⁻²", "current of the EQE above the gap")
+    jsc_sub_gap: Array = _quantity("J_sub", "mA cm⁻²", "current of the EQE below the gap")
+    jsc_reflected: Array = _quantity("J_R", "mA cm⁻²", "photons above the gap that are reflected, as a current")
     j0_rad: Array = _quantity("J_0,rad", "mA cm⁻²", "radiative recombination current of the cell")
     voc_rad: Array = _quantity("V_rad", "V", "radiative voltage of the cell")
     ere_reciprocal: Array = _quantity("ERE_rec", "", "external radiative efficiency by reciprocity (Rau 2007)")
@@ -54,6 +57,8 @@ class Quantities:
     rs: Array = _quantity("R_s", "Ω cm²", "series resistance")
     rsh: Array = _quantity("R_sh", "Ω cm²", "shunt resistance")
     pseudo_ff: Array = _quantity("pFF", "", "fill factor without series resistance")
+    tail_share: Array = _quantity("s_tail", "", "share of J_0,rad that rests on the extrapolated tail")
+    fitted: Array = _quantity("fit", "", "1 where n, R_s and R_sh come from a fit")
     ff_voltage: Array = _quantity("FF_n=1", "", "ideal diode, n = 1, at the cell's V_oc")
     ff_ideality: Array = _quantity("FF_n", "", "diode with the cell's n")
     ff_without_rs: Array = _quantity("FF_no Rs", "", "diode before R_s is added")
@@ -95,10 +100,13 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
     Returns
     -------
     Quantities
-        Without an EQE the absorption edge is taken as a step, so `j0_rad` is `j0_limit`.
+        Without an EQE the absorption edge is taken as a step, so `j0_rad` is `j0_limit`, and `voc_rad` equals
+        `voc_limit_at_jsc` bit for bit.
     """
     vt = thermal_voltage(cell.temperature)
     voc_limit_at_jsc = vt * np.log1p(cell.jsc / limit.j0)
+    j0_rad = np.where(np.isnan(cell.j0_rad), limit.j0, cell.j0_rad)
+    voc_rad = vt * np.log1p(cell.jsc / np.where(j0_rad > 0, j0_rad, np.nan))
     weights = factor_weights(
         (limit.jsc, limit.voc, limit.ff), (cell.jsc, cell.voc, cell.ff), attribution
     )
@@ -118,14 +126,19 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
         ff=cell.ff,
         power=cell.power,
         voc_limit_at_jsc=voc_limit_at_jsc,
-        j0_rad=limit.j0,
-        voc_rad=voc_limit_at_jsc,
-        ere_reciprocal=np.exp((cell.voc - voc_limit_at_jsc) / vt),
+        jsc_eqe=cell.eqe_above,
+        jsc_sub_gap=cell.eqe_below,
+        jsc_reflected=cell.reflected,
+        j0_rad=j0_rad,
+        voc_rad=voc_rad,
+        ere_reciprocal=np.exp((cell.voc - voc_rad) / vt),
         ere=cell.ere,
         ideality=cell.ideality,
         rs=cell.rs,
         rsh=cell.rsh,
         pseudo_ff=cell.pseudo_ff,
+        tail_share=cell.tail_share,
+        fitted=cell.fitted,
         **_fill_factors(cell, vt),
         weight_current=weights[0],
         weight_voltage=weights[1],

@@ -164,23 +164,33 @@ def _or(value: float, other: float) -> float:
 def ledger_of(cell: dict[str, float], name: str, attribution: str = "log-mean", faces: int = 1) -> dict[str, float]:
     """Losses [mW cm⁻²] by line of one cell; a line that the cell does not have is not in the result.
 
-    `cell` holds gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff; NaN is unknown.
+    `cell` holds gap, voc, jsc, ff, temperature, irradiance, ere, ideality, rs, rsh, pseudo_ff, eqe_above, eqe_below,
+    reflected, j0_rad; NaN is unknown.
     """
     gap, voc, jsc, ff, t = (cell[key] for key in ("gap", "voc", "jsc", "ff", "temperature"))
     ere, n, rs, rsh, pff = (cell[key] for key in ("ere", "ideality", "rs", "rsh", "pseudo_ff"))
     limit = limit_of(name, gap, t, cell["irradiance"], faces)
     vt = k * t / e
     w_j, w_v, w_f = weights((limit.jsc, limit.voc, limit.ff), (jsc, voc, ff), attribution)
-    radiative = vt * math.log(jsc / limit.j0 + 1)
+    step_edge = vt * math.log(jsc / limit.j0 + 1)
+    radiative = vt * math.log(jsc / _or(cell["j0_rad"], limit.j0) + 1)
     lines = {
         "below_gap": limit.incident - limit.above,
         "thermalisation": limit.above - limit.jsc * gap,
         "limit_voltage": limit.jsc * (gap - limit.voc),
         "limit_fill": limit.jsc * limit.voc * (1 - limit.ff),
-        "current": w_j * (limit.jsc - jsc),
-        "voltage_low_current": w_v * (limit.voc - radiative),
-        "voltage_edge": 0.0,
+        "voltage_low_current": w_v * (limit.voc - step_edge),
+        "voltage_edge": w_v * (step_edge - radiative),
     }
+    above, below, reflected = (cell[key] for key in ("eqe_above", "eqe_below", "reflected"))
+    if math.isnan(above):
+        lines["current"] = w_j * (limit.jsc - jsc)
+    else:
+        if not math.isnan(reflected):
+            lines["reflection"] = w_j * reflected
+        lines["uncollected"] = w_j * (limit.jsc - above - _or(reflected, 0.0))
+        lines["sub_gap_current"] = -w_j * below
+        lines["current_mismatch"] = w_j * (above + below - jsc)
     if math.isnan(ere):
         lines["nonradiative"] = w_v * (radiative - voc)
     else:

@@ -28,6 +28,7 @@ def random_cells(count: int, light: Illumination, seed: int, irradiance: float |
     def sometimes(values: NDArray[np.float64]) -> NDArray[np.float64]:
         return np.where(rng.random(count) < 0.5, values, np.nan)
 
+    with_eqe = rng.random(count) < 0.5
     return Cell.of(
         gap=gap,
         voc=voc,
@@ -40,4 +41,10 @@ def random_cells(count: int, light: Illumination, seed: int, irradiance: float |
         rs=sometimes(ohm * rng.uniform(0.0, 0.8, count)),
         rsh=sometimes(ohm * np.exp(rng.uniform(np.log(1.05), np.log(1e4), count))),
         pseudo_ff=sometimes(rng.uniform(0.3, 0.95, count)),
+        eqe_above=np.where(with_eqe, jsc * rng.uniform(0.9, 1.1, count), np.nan),
+        eqe_below=np.where(with_eqe, jsc * rng.uniform(0.0, 0.05, count), np.nan),
+        reflected=sometimes(jsc * rng.uniform(0.0, 0.2, count)),
+        j0_rad=np.where(with_eqe, limit.j0 * np.exp(rng.uniform(-1.0, 4.0, count)), np.nan),
+        tail_share=np.where(rng.random(count) < 0.5, rng.random(count), 0.0),
+        fitted=np.where(rng.random(count) < 0.5, 1.0, 0.0),
     )

@@ -28,6 +28,7 @@ CASES = {
     "jsc_above_limit": ({"jsc": 29.1}, {"jsc": 28.9}),
     "voc_above_radiative": ({"voc": 1.225, "jsc": 16.0}, {"voc": 1.205, "jsc": 16.0}),
     "ere_contradicts_voc": ({"ere": 1e-5}, {"ere": 0.006}),
+    "currents_disagree": ({"eqe_above": 22.6, "eqe_below": 0.1}, {"eqe_above": 22.8, "eqe_below": 0.1}),
     "ff_above_ideal": ({"ff": 0.90, "ideality": np.nan}, {"ff": 0.88, "ideality": np.nan}),
     "ff_below_quarter": ({"ff": 0.25}, {"ff": 0.26}),
     "pseudo_ff_below_ff": ({"pseudo_ff": 0.77}, {"pseudo_ff": 0.79}),

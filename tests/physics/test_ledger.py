@@ -61,14 +61,14 @@ def test_ten_thousand_random_cells_close(attribution: Attribution, faces: Faces)
     _check_sums(ledger)
     # The cells are what they should be: every line is negative somewhere and positive somewhere, where it can be.
     for entry in entries_of(ledger, Section.LIMIT_TO_CELL):
-        if entry.line.key != "voltage_edge":
+        assert entry.present.any()
+        if entry.line.key != "sub_gap_current":  # always a gain
             assert (entry.delta > 0).any(), entry.line.key
-            assert entry.present.any()
-    negative = ("current", "voltage_low_current", "nonradiative", "voltage_residual", "fill_voltage", "fill_ideality",
+    negative = ("current", "uncollected", "sub_gap_current", "current_mismatch", "voltage_edge", "voltage_low_current", "nonradiative", "voltage_residual", "fill_voltage", "fill_ideality",
                 "fill_recombination", "fill_transport", "fill_residual")
     for key in negative:
         assert (ledger[key].loss < 0).any(), key
-    for name in ("ere", "ideality", "rs", "rsh", "pseudo_ff"):
+    for name in ("ere", "ideality", "rs", "rsh", "pseudo_ff", "eqe_above", "reflected", "j0_rad"):
         known = ~np.isnan(getattr(cells, name))
         assert 0.4 < known.mean() < 0.6
 
@@ -184,6 +184,8 @@ def _keys(ledger: Ledger) -> set[str]:
 
 
 ALWAYS = {"current", "voltage_low_current", "voltage_edge", "nonradiative", "fill_voltage"}
+EQE = {"eqe_above": 24.3, "eqe_below": 0.2, "j0_rad": 1e-19}
+BY_EQE = {"uncollected", "sub_gap_current", "current_mismatch"}
 FIGURES = {"gap": 1.5, "voc": 1.1, "jsc": 24.0, "ff": 0.76}
 
 
@@ -207,6 +209,33 @@ def test_lines_follow_what_is_known(known: dict[str, float], more: set[str]) -> 
     assert _keys(ledger) == ALWAYS | more
 
 
+@pytest.mark.parametrize(("known", "more"), [({}, set()), ({"reflected": 1.0}, {"reflection"})], ids=str)
+def test_an_eqe_splits_the_current(known: dict[str, float], more: set[str]) -> None:
+    ledger = ledger_of(Cell.of(**FIGURES, **EQE, **known), AM15G)
+    assert _keys(ledger) == (ALWAYS - {"current"}) | BY_EQE | more | {"fill_residual"}
+    whole = ledger_of(Cell.of(**FIGURES), AM15G)["current"]
+    parts = [ledger[key] for key in BY_EQE | more]
+    assert sum(float(part.delta) for part in parts) == pytest.approx(float(whole.delta), abs=1e-13)
+    assert float(ledger["sub_gap_current"].delta) == -0.2
+    assert float(ledger["current_mismatch"].delta) == pytest.approx(24.3 + 0.2 - 24.0, abs=1e-13)
+
+
+def test_a_reflectance_without_an_eqe_changes_nothing() -> None:
+    assert _keys(ledger_of(Cell.of(**FIGURES, reflected=1.0), AM15G)) == ALWAYS | {"fill_residual"}
+
+
+def test_a_step_of_eqe_gives_the_step_ledger() -> None:
+    limit = detailed_balance_limit(1.5, 298.15, AM15G, 100.0)
+    step = ledger_of(
+        Cell.of(**FIGURES, eqe_above=float(limit.jsc), eqe_below=0.0, j0_rad=float(limit.j0)), AM15G
+    )
+    plain = ledger_of(Cell.of(**FIGURES), AM15G)
+    for key in ("voltage_low_current", "voltage_edge", "nonradiative", "fill_voltage", "fill_residual"):
+        assert float(step[key].loss) == float(plain[key].loss)
+    assert float(step["uncollected"].delta) == 0.0
+    assert float(step["current_mismatch"].loss) == float(plain["current"].loss)
+
+
 def test_basis_follows_what_is_known() -> None:
     def basis(key: str, **known: float) -> tuple[Basis, str]:
         form = ledger_of(Cell.of(**FIGURES, **known), AM15G)[key].form_at()
@@ -225,6 +254,15 @@ def test_basis_follows_what_is_known() -> None:
     assert basis("fill_series", rs=1.0, ideality=1.4)[0] is Basis.MEASURED
     assert basis("fill_shunt", rsh=1e3, ideality=1.4)[0] is Basis.MEASURED
     assert ledger_of(Cell.of(**FIGURES), AM15G)["fill_series"].form_at() is None
+    fit = {"rs": 1.0, "rsh": 1e3, "ideality": 1.4, "fitted": 1.0}
+    for key in ("fill_ideality", "fill_series", "fill_shunt"):
+        assert basis(key, **fit) == (Basis.FITTED, "one-diode fit to the sweep")
+    assert basis("voltage_edge", **EQE) == (Basis.MEASURED, "from the EQE")
+    assert basis("voltage_edge", **EQE, tail_share=0.2) == (Basis.FITTED, "from the EQE, its tail extrapolated")
+    assert basis("nonradiative", **EQE) == (Basis.MEASURED, "by reciprocity, with the EQE")
+    assert basis("nonradiative", **EQE, tail_share=0.2)[0] is Basis.FITTED
+    assert basis("nonradiative", **EQE, tail_share=0.2, ere=0.01) == (Basis.MEASURED, "from the ERE")
+    assert basis("voltage_residual", **EQE, ere=0.01) == (Basis.MEASURED, "the rest, with the EQE")
 
 
 def test_without_an_ere_the_voltage_is_whole_and_the_ere_is_implied() -> None:
@@ -270,7 +308,7 @@ def test_unknown_lines() -> None:
     ledger = ledger_of(Cell.of(**FIGURES), AM15G)
     assert ledger["current"].line.key == "current"
     with pytest.raises(KeyError):
-        ledger["reflection"]
+        ledger["sunset"]
 
 
 def test_irradiance_as_tabulated() -> None:
