@@ -102,15 +102,15 @@ CHECKS: tuple[Check, ...] = (
     Check(
         "ere_contradicts_voc", "ere", Severity.DOUBTFUL,
         lambda s: np.abs(s["voltage_residual"].delta) > _VOLTAGE_DISAGREEMENT,
-        "This ERE and Voc disagree by more than 30 mV, with the edge as it is known; the difference stands in a line of "
-        "its own.",
+        "This ERE and Voc disagree by more than 30 mV, with the edge as it is known; the difference stands in a line "
+        "of its own.",
     ),
     Check(
         "currents_disagree", "jsc", Severity.DOUBTFUL,
         lambda s: np.abs(s.quantities.jsc_eqe + s.quantities.jsc_sub_gap - s.cell.jsc)
         > _CURRENT_DISAGREEMENT * s.cell.jsc,
-        "The EQE gives {jsc_eqe:.4g} mA cm⁻² above the gap, the sweep {jsc:.4g}: more than 5 % apart wants a reason, such "
-        "as the mask's area, the lamp's spectrum, or an EQE without bias light.",
+        "The EQE gives {jsc_eqe:.4g} mA cm⁻² above the gap, the sweep {jsc:.4g}: more than 5 % apart wants a reason, "
+        "such as the mask's area, the lamp's spectrum, or an EQE without bias light.",
     ),
     Check(
         "ff_above_ideal", "ff", Severity.DOUBTFUL,

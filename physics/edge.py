@@ -76,6 +76,12 @@ class Edge:
     tail_u: float | None
     faults: tuple[EdgeFault, ...]
 
+    def tail_at(self, temperature: float) -> tuple[Tail | None, tuple[EdgeFault, ...]]:
+        """The tail that may be followed at a temperature [K], and why there is none or whatever else is missing."""
+        if self.tail is not None and self.tail.slope >= thermal_voltage(temperature):
+            return None, (EdgeFault.FLAT_TAIL,)
+        return self.tail, self.faults
+
 
 _NOTHING = (np.nan, np.nan)
 
@@ -85,7 +91,7 @@ def _without(fault: EdgeFault) -> Edge:
     return Edge(np.nan, np.nan, empty, empty, _NOTHING, None, _NOTHING, None, (fault,))
 
 
-def edge_of(eqe: Curve, temperature: float = 298.15) -> Edge:
+def edge_of(eqe: Curve) -> Edge:
     """Find the gap and the tail of an EQE.
 
     The derivative is that of a cubic smoothing spline over the photon energy whose smoothness generalised
@@ -95,8 +101,6 @@ def edge_of(eqe: Curve, temperature: float = 298.15) -> Edge:
     ----------
     eqe : Curve
         The EQE.
-    temperature : float
-        Temperature of the cell [K], with which a tail is compared.
 
     Returns
     -------
@@ -126,9 +130,7 @@ def edge_of(eqe: Curve, temperature: float = 298.15) -> Edge:
     mean = float(np.trapezoid(grid[band] * weight, grid[band]) / np.trapezoid(weight, grid[band]))
     ceiling = _TAIL_TOP * float(smooth[band][-1])
     tail, span, u = _tail(energy, value, float(grid[band][0]), ceiling)
-    faults: tuple[EdgeFault, ...] = () if tail is not None else (EdgeFault.NO_TAIL,)
-    if tail is not None and tail.slope >= thermal_voltage(temperature):
-        tail, faults = None, (EdgeFault.FLAT_TAIL,)
+    faults = () if tail is not None else (EdgeFault.NO_TAIL,)
     return Edge(
         _peak(grid, slope, at), mean, grid, slope, (float(grid[band][0]), float(grid[band][-1])), tail, span, u, faults
     )

@@ -64,7 +64,8 @@ def test_ten_thousand_random_cells_close(attribution: Attribution, faces: Faces)
         assert entry.present.any()
         if entry.line.key != "sub_gap_current":  # always a gain
             assert (entry.delta > 0).any(), entry.line.key
-    negative = ("current", "uncollected", "sub_gap_current", "current_mismatch", "voltage_edge", "voltage_low_current", "nonradiative", "voltage_residual", "fill_voltage", "fill_ideality",
+    negative = ("current", "uncollected", "sub_gap_current", "current_mismatch", "voltage_edge",
+                "voltage_low_current", "nonradiative", "voltage_residual", "fill_voltage", "fill_ideality",
                 "fill_recombination", "fill_transport", "fill_residual")
     for key in negative:
         assert (ledger[key].loss < 0).any(), key
