@@ -8,8 +8,8 @@ from dataclasses import dataclass
 from functools import lru_cache
 
 from app.files.numbers import write_number
-from app.session.appraisal import light_named
 from app.session.fields import FIELDS
+from app.session.light import light_named
 from app.session.state import CellEntry, Choices
 from physics.ledger import Entry, Ledger
 from physics.lines import Basis, Form

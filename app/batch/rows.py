@@ -10,8 +10,9 @@ from app.cell_columns import GROUP, NAME, SPECTRUM, not_available
 from app.cells import ReadRow, read_row
 from app.files.quoting import quote
 from app.files.tables import Table
-from app.session.appraisal import Problem, field_problems, gap_fault, light_named
+from app.session.appraisal import Problem, field_problems, gap_fault
 from app.session.fields import FIELD_BY_KEY
+from app.session.light import light_named
 from physics.checks import Severity
 from physics.spectrum import Illumination
 

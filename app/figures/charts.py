@@ -7,8 +7,8 @@ from functools import lru_cache
 
 import numpy as np
 
-from app.figures.spec import Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
-from app.session.appraisal import light_named
+from app.figures.spec import Dash, Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
+from app.session.light import light_named
 from app.session.outcome import Picture
 from app.wording import (
     basis_text,
@@ -184,6 +184,10 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
     drawn = not math.isnan(cell_curve.ideality)
     series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
+    for k, sweep in enumerate(s for s in picture.entry.curves.sweeps if s.lit):
+        label = f"measured{f', {sweep.direction}' if sweep.direction else ''}"
+        dash: Dash = "solid" if k == 0 else "dotted"
+        series.append(Series(f"sweep {k}", label, sweep.voltage, sweep.current, "muted", dash))
     if drawn:
         label = f"{_short_name(picture)} (modelled)"
         series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))

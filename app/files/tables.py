@@ -82,6 +82,17 @@ def load_table(path: Path) -> Table:
     TableError
         Where the file cannot be opened or is not a usable table.
     """
+    return read_table(load_bytes(path), path.name)
+
+
+def load_bytes(path: Path) -> bytes:
+    """The bytes of a file that is to be read as a table.
+
+    Raises
+    ------
+    TableError
+        With a sentence, where the file cannot be opened or is too large.
+    """
     source = path.name
     try:
         status = path.stat()
@@ -90,7 +101,7 @@ def load_table(path: Path) -> Table:
         if not stat.S_ISREG(status.st_mode):
             raise TableError(f"{quote(source)} is a device or pipe, not a file: choose a table file.")
         _check_size(status.st_size, source)
-        data = path.read_bytes()
+        return path.read_bytes()
     except TableError:
         raise
     except FileNotFoundError as fault:
@@ -102,7 +113,6 @@ def load_table(path: Path) -> Table:
     except (OSError, ValueError) as fault:
         told = fault.strerror if isinstance(fault, OSError) and fault.strerror else str(fault)
         raise TableError(f"{quote(source)} cannot be read, the system reports “{told}”: choose another.") from fault
-    return read_table(data, source)
 
 
 def read_table(data: bytes, source: str) -> Table:

@@ -8,13 +8,15 @@ from functools import lru_cache
 
 import numpy as np
 
+from app.session.curves import curve_figures
 from app.session.fields import FIELD_BY_KEY, FIELDS
+from app.session.light import light_named
 from app.session.state import CellEntry, Choices, Unread
 from physics.cell import UNKNOWN, Cell
 from physics.checks import Check, Severity, failed
 from physics.ledger import Ledger, ledger_against
 from physics.limit import Faces, Limit, detailed_balance_limit
-from physics.spectrum import REFERENCE_NAMES, Illumination, illumination
+from physics.spectrum import Illumination
 from physics.units import Array
 
 
@@ -53,29 +55,6 @@ class Appraisal:
             return None
         mine = [p for p in self.problems if p.field == field]
         return min(mine, key=lambda p: p.severity is not Severity.IMPOSSIBLE, default=None)
-
-
-@lru_cache(maxsize=64)
-def light_named(name: str) -> Illumination:
-    """The illumination of a short name.
-
-    Raises
-    ------
-    ValueError
-        With a sentence for the user, where there is none of that name.
-    """
-    try:
-        return illumination(name)
-    except ValueError as fault:
-        known = ", ".join(REFERENCE_NAMES)
-        if name.strip().lower().startswith("blackbody:"):
-            raise ValueError(
-                f"The spectrum {name!r} is no black body: write blackbody: and a temperature between 1000 and 20000 K, "
-                "such as blackbody:6000."
-            ) from fault
-        raise ValueError(
-            f"The spectrum {name!r} is not known here: use {known}, or blackbody:6000 for a black body of 6000 K."
-        ) from fault
 
 
 @lru_cache(maxsize=64)
@@ -134,6 +113,15 @@ def physics_values(columns: Mapping[str, object]) -> dict[str, Array]:
     return arguments
 
 
+def _cell_of(entry: CellEntry, values: Mapping[str, object], choices: Choices) -> Cell:
+    """The cell that the numbers and curves describe."""
+    numbers = physics_values(values)
+    gap, temperature, irradiance = (float(numbers[key]) for key in ("gap", "temperature", "irradiance"))
+    more = curve_figures(entry.curves, entry.spectrum, gap, temperature, irradiance, choices.faces)
+    fitted = float("fit" in entry.sources.values())
+    return Cell.of(**numbers, **more, fitted=fitted)
+
+
 def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
     """Check one cell and work out its ledger.
 
@@ -164,7 +152,7 @@ def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
         return Appraisal(entry, tuple(problems), None)
     wrong = {p.field for p in problems}
     sound = {key: None if key in wrong else value for key, value in entry.values.items()}
-    cell = Cell.of(**physics_values(sound))
+    cell = _cell_of(entry, sound, choices)
     limit = limit_under(entry.spectrum, float(cell.gap), float(cell.temperature), float(cell.irradiance), choices.faces)
     ledger = ledger_against(cell, limit, choices.attribution)
     problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in failed(ledger)]

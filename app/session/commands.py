@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Hashable
+from collections.abc import Hashable, Mapping
 from dataclasses import dataclass, replace
 from typing import Protocol
 
+from app.session.curves import Curves, Source
 from app.session.fields import FIELD_BY_KEY
 from app.session.state import CellEntry, Choices, State, Value
 
@@ -44,6 +45,29 @@ class SetValue:
     def apply(self, state: State) -> State:
         cell = state.cells[state.position(self.ident)]
         return state.with_cell(cell.with_value(self.key, self.value))
+
+
+@dataclass(frozen=True)
+class SetFigures:
+    """Change several numbers of a cell at once, read off its curves, and the curves with them if they changed."""
+
+    ident: int
+    values: Mapping[str, Value]
+    sources: Mapping[str, Source]
+    curves: Curves | None = None
+    label: str = "figures from a curve"
+
+    @property
+    def name(self) -> str:
+        return self.label
+
+    @property
+    def merge(self) -> Hashable:
+        return None
+
+    def apply(self, state: State) -> State:
+        cell = state.cells[state.position(self.ident)].with_figures(self.values, self.sources)
+        return state.with_cell(cell if self.curves is None else replace(cell, curves=self.curves))
 
 
 @dataclass(frozen=True)

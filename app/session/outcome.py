@@ -8,7 +8,8 @@ from functools import lru_cache
 
 import numpy as np
 
-from app.session.appraisal import Appraisal, appraise, light_named
+from app.session.appraisal import Appraisal, appraise
+from app.session.light import light_named
 from app.session.session import Session
 from app.session.state import CellEntry, Choices
 from physics.diode import Diode, matching_ideality

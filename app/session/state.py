@@ -6,6 +6,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from types import MappingProxyType
 
+from app.session.curves import NO_CURVES, Curves, Source
 from app.session.fields import FIELDS
 from physics.attribution import Attribution
 from physics.limit import Faces
@@ -39,6 +40,10 @@ class CellEntry:
         One value for every field of `app.session.fields.FIELDS`.
     note : str
         Free text that goes into captions.
+    curves : Curves
+        What was measured of it beside single figures.
+    sources : mapping of str to Source
+        By field: where its value was read off, if it was not typed.
     """
 
     ident: int
@@ -47,12 +52,21 @@ class CellEntry:
     spectrum: str = "am15g"
     values: Mapping[str, Value] = field(default_factory=lambda: EMPTY_VALUES)
     note: str = ""
+    curves: Curves = NO_CURVES
+    sources: Mapping[str, Source] = field(default_factory=lambda: TYPED)
 
     def with_value(self, key: str, value: Value) -> CellEntry:
-        """The same cell with one field changed."""
-        return replace(self, values=MappingProxyType({**self.values, key: value}))
+        """The same cell with one field typed anew."""
+        return self.with_figures({key: value}, {})
+
+    def with_figures(self, values: Mapping[str, Value], sources: Mapping[str, Source]) -> CellEntry:
+        """The same cell with some fields changed, which then have these sources, or none."""
+        kept = {key: source for key, source in self.sources.items() if key not in values}
+        merged = MappingProxyType({**kept, **sources}) if kept or sources else TYPED
+        return replace(self, values=MappingProxyType({**self.values, **values}), sources=merged)
 
 
+TYPED: Mapping[str, Source] = MappingProxyType({})
 EMPTY_VALUES: Mapping[str, Value] = MappingProxyType({f.key: f.default for f in FIELDS})
 
 

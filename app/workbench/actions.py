@@ -11,20 +11,22 @@ from PySide6.QtCore import QObject
 from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
 from PySide6.QtWidgets import QComboBox, QFileDialog, QLabel, QMenu, QToolBar
 
+from app.cell_columns import KNOWN
 from app.cells import cell_table, entries_from
 from app.figures.charts import waterfall_of
 from app.files.file_names import safe_stem
 from app.files.table_error import TableError
-from app.files.tables import load_table
+from app.files.tables import load_bytes, read_table
 from app.files.write_error import WriteError
 from app.files.writer import write_text
 from app.ledger_rows import ledger_csv, ledger_tsv
-from app.session.commands import AddCells, RemoveCell, SetChoices
+from app.session.commands import AddCells, RemoveCell, SetChoices, SetFigures
 from app.session.outcome import Outcome
-from app.session.state import CellEntry, Choices
+from app.session.state import CellEntry, Choices, Value
 from app.workbench.number_field import ignore_wheel
 
 if TYPE_CHECKING:
+    from app.session.curves import Source
     from app.workbench.export_panel import ExportPanel
     from app.workbench.help_panel import HelpPanel
     from app.workbench.window import Window
@@ -82,7 +84,9 @@ class Actions(QObject):
         self.copy_chart = self._action("&Copy waterfall as picture", self._copy_chart, "Ctrl+Shift+C", picture)
         self.copy_table = self._action("Copy ledger as &table", self._copy_table, "Ctrl+Shift+T", picture)
         self.export = self._action("&Export a picture…", self.show_export, "Ctrl+E", picture)
-        open_ = self._action("&Open a table of cells…", self._ask_open, standard.Open)
+        open_ = self._action("&Open cells or measured curves…", self._ask_open, standard.Open)
+        inflection = self._action("Gap from the EQE's &inflection", lambda: self._take_gap("inflection"), None, cell)
+        mean = self._action("Gap from the EQE's edge &mean", lambda: self._take_gap("edge mean"), None, cell)
         save_shelf = self._action("&Save the shelf as a table…", self._ask_save_shelf, standard.Save, cell)
         save_ledger = self._action("Save the &ledger as CSV…", self._ask_save_ledger, "Ctrl+Shift+S", picture)
         quit_ = self._action("&Quit", self._window.close, standard.Quit)
@@ -91,7 +95,7 @@ class Actions(QObject):
         help_ = self._action("&Cautions, conventions and keys", self.show_help, standard.HelpContents)
         self._menu("&File", (open_, save_shelf, None, self.export, save_ledger, None, quit_))
         self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table))
-        self._menu("&Cell", (self.new, self.duplicate, self.remove, None, previous, following))
+        self._menu("&Cell", (self.new, self.duplicate, self.remove, None, inflection, mean, None, previous, following))
         self._menu("&Help", (help_,))
 
     def _fill_bar(self) -> None:
@@ -189,18 +193,55 @@ class Actions(QObject):
 
     def _ask_open(self) -> None:
         names, _ = QFileDialog.getOpenFileNames(
-            self._window, "Open a table of cells", "", "Tables (*.csv *.tsv *.txt);;All files (*)"
+            self._window, "Open cells or measured curves", "", "Tables (*.csv *.tsv *.txt *.dat);;All files (*)"
         )
         for name in names:
-            self.open_table(Path(name))
+            self.open_file(Path(name))
 
-    def open_table(self, path: Path) -> None:
-        """Put the cells of a table on the shelf, and tell what could not be taken."""
+    def open_file(self, path: Path) -> None:
+        """Put the cells of a table on the shelf, or measured curves into the cell on show."""
         try:
-            entries, left_out = entries_from(load_table(path), path.name)
+            data = load_bytes(path)
+            if _holds_cells(data, path.name):
+                self._take_cells(data, path)
+            else:
+                self._take_curves(data, path)
         except TableError as fault:
             self._say(str(fault), lasting=True)
+
+    def _take_curves(self, data: bytes, path: Path) -> None:
+        from app.files.measured import apply, guess, read_measured
+        from app.session.curve_import import taken
+
+        text = read_measured(data, path.name)
+        reading = guess(text)
+        cell = self._session.state.cell or CellEntry(0, path.stem)
+        command, sentences = taken(apply(text, reading), cell, path.name)
+        if self._session.state.cell is None:
+            self._session.do(AddCells((cell,)))
+            command = replace(command, ident=self._session.state.cells[-1].ident)
+        self._session.do(command)
+        questions = f" To be checked: {' '.join(reading.questions)}" if reading.questions else ""
+        self._say(f"{path.name}: {' '.join(sentences)}{questions}", lasting=True)
+
+    def _take_gap(self, source: Source) -> None:
+        """Set the gap by one of the EQE's definitions."""
+        from app.session.curves import gap_figures
+
+        cell = self._session.state.cell
+        if cell is None:
             return
+        found = {} if cell.curves.eqe is None else gap_figures(cell.curves.eqe)
+        if source in found:
+            values: dict[str, Value] = {"gap": found[source]}
+            self._session.do(SetFigures(cell.ident, values, {"gap": source}, label=f"gap from the {source}"))
+        elif cell.curves.eqe is None:
+            self._say("This cell has no EQE: open its file first (Ctrl+O).")
+        else:
+            self._say("No gap can be read off this EQE.")
+
+    def _take_cells(self, data: bytes, path: Path) -> None:
+        entries, left_out = entries_from(read_table(data, path.name), path.name)
         if entries:
             self._session.do(AddCells(entries, "opening of a table"))
         sentence = f"{len(entries)} cell{'' if len(entries) == 1 else 's'} taken from {path.name}."
@@ -266,3 +307,11 @@ class Actions(QObject):
             self._help = HelpPanel(self._window)
         self._help.show()
         self._help.raise_()
+
+
+def _holds_cells(data: bytes, source: str) -> bool:
+    """Whether a file is a table of cells, good or not: it names at least one of their columns."""
+    try:
+        return bool(KNOWN & set(read_table(data, source).columns))
+    except TableError:
+        return False

@@ -5,9 +5,9 @@ from __future__ import annotations
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QScrollArea, QVBoxLayout, QWidget
 
-from app.session.appraisal import light_named
 from app.session.commands import Describe, SetValue
 from app.session.fields import FIELD_BY_KEY
+from app.session.light import light_named
 from app.session.outcome import Outcome
 from app.session.session import Session
 from app.session.state import Value

@@ -170,10 +170,10 @@ class Window(QMainWindow):
             event.acceptProposedAction()
 
     def dropEvent(self, event: QDropEvent) -> None:
-        """Open what was dropped as tables of cells."""
+        """Open what was dropped: tables of cells, or curves of the cell on show."""
         for url in event.mimeData().urls():
             if url.isLocalFile():
-                self.actions_.open_table(Path(url.toLocalFile()))
+                self.actions_.open_file(Path(url.toLocalFile()))
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Close the windows beside this one, too."""

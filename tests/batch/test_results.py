@@ -17,7 +17,8 @@ from app.batch.command import run
 from app.batch.portions import RESULTS, portions_of
 from app.cells import entries_from
 from app.files.tables import load_table
-from app.session.appraisal import appraise, light_named
+from app.session.appraisal import appraise
+from app.session.light import light_named
 from app.session.outcome import picture_of
 from app.session.state import Choices
 from app.wording import basis_text

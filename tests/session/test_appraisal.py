@@ -3,9 +3,10 @@
 import numpy as np
 import pytest
 
-from app.session.appraisal import appraise, field_problems, light_named
+from app.session.appraisal import appraise, field_problems
 from app.session.commands import AddCells, SetValue
 from app.session.fields import FIELD_BY_KEY, FIELDS
+from app.session.light import light_named
 from app.session.outcome import Outcomes, cell_curve
 from app.session.session import Session
 from app.session.state import CellEntry, Choices, State, Unread, Value
