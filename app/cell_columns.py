@@ -23,6 +23,9 @@ TEXT_COLUMNS = (NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE)
 KNOWN = frozenset((*TEXT_COLUMNS, *FIELD_BY_COLUMN))
 REQUIRED = (NAME, *(field.column for field in FIELDS if field.required))
 
+#: Columns that need not be there where a curve file holds the figure.
+_BY_FILE = {"gap_eV": EQE_FILE, "voc_V": JV_FILE, "jsc_mA_cm2": JV_FILE, "ff_pct": JV_FILE}
+
 #: How else the quantities are called (lower case, nothing but letters), beside their symbol and name on screen.
 _OTHER_NAMES = {
     "gap_eV": ("gap", "energygap", "opticalgap"),
@@ -108,7 +111,7 @@ def check_header(columns: tuple[str, ...], source: str) -> tuple[str, ...]:
     extras = tuple(c for c in columns if c not in KNOWN and not c.startswith(UNCERTAINTY))
     # "U_…" and "u_…" alike: an uncertainty by another spelling must not travel along unread either.
     suspects = {c: meant for c in columns if c not in KNOWN and (meant := meant_by(c)) not in ("", c)}
-    missing = [column for column in REQUIRED if column not in columns]
+    missing = [column for column in REQUIRED if column not in columns and _BY_FILE.get(column) not in columns]
     if not missing and not suspects:
         return extras
     sentences = []
@@ -136,8 +139,6 @@ def _hints(missing: Iterable[str], others: list[str]) -> list[str]:
         near = [c for c in others if _without_unit(c) in _HINTS.get(column, ())]
         sentences += [f"If {quote(c)} is meant, name it {column}{_AMOUNT.get(column, '')}." for c in near[:1]]
     if set(missing) & set(FIELD_BY_COLUMN):
-        if JV_FILE in others:
-            sentences.append(f"Curve files ({JV_FILE}) are not read by this version.")
         near = [c for c in others if _without_unit(c) in _EFFICIENCIES]
         sentences += [f"An efficiency ({quote(c)}) does not replace them." for c in near[:1]]
     return sentences
@@ -179,10 +180,6 @@ def not_available(cells: Mapping[str, str]) -> list[tuple[str, str]]:
 
 def _not_read_yet(column: str) -> str:
     """Sentence about a column whose contents this version does not read, or an empty text."""
-    if column == JV_FILE:
-        return f"J–V files are not read by this version: leave {column} empty and give Voc, Jsc and FF."
-    if column == EQE_FILE:
-        return f"EQE files are not read by this version: leave {column} empty and give the gap."
     if column.startswith(UNCERTAINTY):
         return f"Uncertainties are not read by this version: leave {column} empty."
     return ""

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from pathlib import Path
 from types import MappingProxyType
 
 from app.cell_columns import check_header, not_available
+from app.cell_curves import with_curves
 from app.files.numbers import NumberError
 from app.files.table_output import write_table
 from app.files.tables import Table
@@ -67,7 +69,9 @@ def entry_of(row: ReadRow, note: str = "") -> CellEntry:
     return CellEntry(0, row.name, row.group, row.spectrum, row.values, note)
 
 
-def entries_from(table: Table, source: str) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
+def entries_from(
+    table: Table, source: str, folder: Path = Path()
+) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
     """Shelf entries of a table of cells.
 
     Parameters
@@ -76,6 +80,8 @@ def entries_from(table: Table, source: str) -> tuple[tuple[CellEntry, ...], tupl
         As read from a file. A column "note" (or "story") becomes the note.
     source : str
         What to call the table.
+    folder : Path
+        Folder that the names of curve files start from.
 
     Returns
     -------
@@ -100,8 +106,9 @@ def entries_from(table: Table, source: str) -> tuple[tuple[CellEntry, ...], tupl
         if fault:
             left_out.append(f"Line {line}: {fault}")
         else:
-            entries.append(entry_of(read, note_in(cells)))
-            left_out += [f"Line {line}: {sentence}" for _, sentence in not_available(cells)]
+            entry, faults, doubts = with_curves(entry_of(read, note_in(cells)), cells, folder)
+            entries.append(entry)
+            left_out += [f"Line {line}: {sentence}" for _, sentence in (*not_available(cells), *faults, *doubts)]
     return tuple(entries), tuple(left_out)
 
 

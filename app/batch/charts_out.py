@@ -7,6 +7,7 @@ from pathlib import Path
 
 from app.batch.console import Progress
 from app.batch.options import ChartKind
+from app.cell_curves import with_curves
 from app.cells import entry_of, note_in, read_row
 from app.figures.charts import waterfall_of
 from app.figures.export import PRESETS, ensure_gui, render
@@ -20,7 +21,9 @@ from app.session.state import CellEntry, Choices
 _PRESET = PRESETS["slide"]
 
 
-def write_charts(folder: Path, table: Table, computed: Sequence[int], choices: Choices, kind: ChartKind) -> int:
+def write_charts(
+    folder: Path, table: Table, curves: Path, computed: Sequence[int], choices: Choices, kind: ChartKind
+) -> int:
     """Draw the waterfall of every cell that has a ledger, as the window would.
 
     Parameters
@@ -29,6 +32,8 @@ def write_charts(folder: Path, table: Table, computed: Sequence[int], choices: C
         An existing folder.
     table : Table
         The table of cells.
+    curves : Path
+        Folder that the names of curve files start from.
     computed : sequence of int
         Its rows that have a ledger.
     choices : Choices
@@ -48,7 +53,7 @@ def write_charts(folder: Path, table: Table, computed: Sequence[int], choices: C
     """
     ensure_gui()
     progress = Progress("charts", len(computed))
-    owners = [_entry(table, index) for index in computed]
+    owners = [_entry(table, index, curves) for index in computed]
     names = chart_names([(entry.name, entry.group) for entry in owners], f".waterfall.{kind}")
     count = 0
     for entry, name in zip(owners, names, strict=True):
@@ -60,6 +65,6 @@ def write_charts(folder: Path, table: Table, computed: Sequence[int], choices: C
     return count
 
 
-def _entry(table: Table, index: int) -> CellEntry:
+def _entry(table: Table, index: int, curves: Path) -> CellEntry:
     cells = dict(zip(table.columns, table.rows[index], strict=True))
-    return entry_of(read_row(cells, table.decimal_comma), note_in(cells))
+    return with_curves(entry_of(read_row(cells, table.decimal_comma), note_in(cells)), cells, curves)[0]

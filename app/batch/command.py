@@ -65,7 +65,12 @@ def _run(options: Options) -> int:
         from app.batch.charts_out import write_charts
 
         charts = write_charts(
-            options.into, table, tally.computed, Choices(attribution=options.attribution), options.charts
+            options.into,
+            table,
+            cells.resolve().parent,
+            tally.computed,
+            Choices(attribution=options.attribution),
+            options.charts,
         )
     for old, new in renamed(extras).items():
         if new != old:
@@ -97,7 +102,7 @@ def _prepare(options: Options) -> None:
 def _watched(table: Table, options: Options) -> Iterator[Portion]:
     progress = Progress("rows", len(table.rows))
     done = 0
-    for portion in portions_of(table, options.attribution):
+    for portion in portions_of(table, options.attribution, options.cells.resolve().parent):
         yield portion
         done += len(portion.rows)
         progress.at(done)

@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from itertools import islice
+from pathlib import Path
 
 import numpy as np
 
 from app.batch.rows import Row, read_rows
 from app.files.tables import Table
 from app.session.appraisal import Problem, check_sentence, physics_values
+from app.session.curves import curve_figures
 from app.session.fields import FIELDS
 from physics.attribution import Attribution
 from physics.cell import Cell
@@ -71,9 +73,9 @@ class Portion:
         return np.array([place for place, row in enumerate(self.rows) if not row.refused], dtype=np.intp)
 
 
-def portions_of(table: Table, attribution: Attribution) -> Iterator[Portion]:
-    """All rows of a table, worked out in portions of `ROWS_AT_A_TIME`, in order."""
-    rows = read_rows(table)
+def portions_of(table: Table, attribution: Attribution, folder: Path) -> Iterator[Portion]:
+    """All rows of a table in `folder`, worked out in portions of `ROWS_AT_A_TIME`, in order."""
+    rows = read_rows(table, folder)
     while batch := list(islice(rows, ROWS_AT_A_TIME)):
         yield work_out(batch, attribution)
 
@@ -93,10 +95,26 @@ def work_out(rows: list[Row], attribution: Attribution) -> Portion:
         columns = {field.key: portion.inputs[where, k] for k, field in enumerate(FIELDS)}
         # What overflows here ends in a number that is not finite, and the check `not_finite` tells of it.
         with np.errstate(all="ignore"):
-            ledger = ledger_of(Cell.of(**physics_values(columns)), light, attribution)
+            numbers = physics_values(columns)
+            cell = Cell.of(**numbers, **_curve_columns([rows[place] for place in places], numbers))
+            ledger = ledger_of(cell, light, attribution)
             _keep(portion, where, ledger)
             _check(rows, where, ledger)
     return portion
+
+
+def _curve_columns(rows: list[Row], numbers: Mapping[str, Array]) -> dict[str, Array]:
+    """What the rows' curves add to the numbers of their cells; nothing where no row has any."""
+    if not any(row.fitted or row.curves.eqe is not None for row in rows):
+        return {}
+    columns = {name: np.full(len(rows), np.nan) for name in ("eqe_above", "eqe_below", "j0_rad", "reflected")}
+    columns |= {"tail_share": np.zeros(len(rows)), "fitted": np.array([float(row.fitted) for row in rows])}
+    for k, row in enumerate(rows):
+        gap, temperature, irradiance = (float(numbers[key][k]) for key in ("gap", "temperature", "irradiance"))
+        found = curve_figures(row.curves, row.read.spectrum, gap, temperature, irradiance, 1)
+        for name, value in found.items():
+            columns[name][k] = value
+    return columns
 
 
 def _empty(rows: list[Row]) -> Portion:

@@ -3,14 +3,17 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
-from dataclasses import dataclass, field
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field, replace
+from pathlib import Path
 
 from app.cell_columns import GROUP, NAME, SPECTRUM, not_available
-from app.cells import ReadRow, read_row
+from app.cell_curves import CURVE_COLUMNS, with_curves
+from app.cells import ReadRow, entry_of, read_row
 from app.files.quoting import quote
 from app.files.tables import Table
 from app.session.appraisal import Problem, field_problems, gap_fault
+from app.session.curves import NO_CURVES, Curves
 from app.session.fields import FIELD_BY_KEY
 from app.session.light import light_named
 from physics.checks import Severity
@@ -36,6 +39,10 @@ class Row:
         None where the spectrum is not known, or the row cannot be used at all.
     problems : list of Problem
         What is wrong with it; more may be found when its ledger is worked out.
+    curves : Curves
+        What its files hold.
+    fitted : bool
+        Whether its ideality or resistances come from a fit.
     """
 
     index: int
@@ -43,6 +50,8 @@ class Row:
     read: ReadRow
     light: Illumination | None
     problems: list[Problem] = field(default_factory=list)
+    curves: Curves = NO_CURVES
+    fitted: bool = False
 
     def refuse(self, about: str, sentence: str) -> None:
         """Say why no ledger can be made of this row."""
@@ -59,8 +68,8 @@ def located(line: int, sentence: str) -> str:
     return sentence if _NAMES_ITS_LINE.match(sentence) else f"Line {line}: {sentence}"
 
 
-def read_rows(table: Table) -> Iterator[Row]:
-    """All rows of a table, in order.
+def read_rows(table: Table, folder: Path) -> Iterator[Row]:
+    """All rows of a table, in order; names of curve files start from `folder`.
 
     What a field shows by itself is told in the same sentences as in the window; the columns that only this command
     reads, and names that occur twice, are looked at here.
@@ -76,7 +85,8 @@ def read_rows(table: Table) -> Iterator[Row]:
             continue
         read = read_row(cells, table.decimal_comma)
         light, light_fault = _light_of(read.spectrum)
-        row = Row(index, line, read, light)
+        row = _with_files(Row(index, line, read, light), cells, folder)
+        read = row.read
         _check_name(row, first_lines)
         for column, sentence in not_available(cells):
             row.refuse(column, sentence)
@@ -85,6 +95,19 @@ def read_rows(table: Table) -> Iterator[Row]:
             row.refuse(SPECTRUM, light_fault)
         _check_gap(row)
         yield row
+
+
+def _with_files(row: Row, cells: Mapping[str, str], folder: Path) -> Row:
+    """The row with what its curve files hold."""
+    if not any(cells.get(column, "").strip() for column in CURVE_COLUMNS):
+        return row
+    entry, faults, doubts = with_curves(entry_of(row.read), cells, folder)
+    read = replace(row.read, values=entry.values)
+    row = replace(row, read=read, curves=entry.curves, fitted="fit" in entry.sources.values())
+    for column, sentence in faults:
+        row.refuse(column, sentence)
+    row.problems.extend(Problem(column, Severity.DOUBTFUL, sentence) for column, sentence in doubts)
+    return row
 
 
 def _light_of(spectrum: str) -> tuple[Illumination | None, str]:

@@ -24,6 +24,7 @@ from app.wording import (
 from physics.ledger import Entry, Ledger, entries_of
 from physics.limit import Limit
 from physics.lines import Basis, Family, Section
+from physics.units import EV_NM
 
 STALE = "Last valid input: the fields marked in red do not enter"
 _LONGEST_BESIDE = 16
@@ -184,16 +185,21 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
     drawn = not math.isnan(cell_curve.ideality)
     series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
     marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
-    for k, sweep in enumerate(s for s in picture.entry.curves.sweeps if s.lit):
-        label = f"measured{f', {sweep.direction}' if sweep.direction else ''}"
+    sweeps = [sweep for sweep in picture.entry.curves.sweeps if sweep.lit]
+    for k, sweep in enumerate(sweeps):
         dash: Dash = "solid" if k == 0 else "dotted"
-        series.append(Series(f"sweep {k}", label, sweep.voltage, sweep.current, "muted", dash))
+        label = sweep.direction or f"sweep {k + 1}"
+        series.append(Series(f"sweep {k}", f"{label} (measured)", sweep.voltage, sweep.current, "cell", dash))
     if drawn:
-        label = f"{_short_name(picture)} (modelled)"
-        series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))
+        if not sweeps:
+            label = f"{_short_name(picture)} (modelled)"
+            series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))
         marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
         note = (
-            f"Cell: one-diode curve drawn through Voc, Jsc and FF (n = {cell_curve.ideality:.3g}), not a measured sweep"
+            "Cell: measured sweep; the mark stands on a one-diode curve through Voc, Jsc and FF"
+            if sweeps
+            else "Cell: one-diode curve drawn through Voc, Jsc and FF "
+            f"(n = {cell_curve.ideality:.3g}), not a measured sweep"
         )
     else:
         marks.append(Mark("voc", "Voc", float(ledger.cell.voc), 0.0, "cell"))
@@ -218,6 +224,40 @@ def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency
     at = int(np.argmax(voltage * current))
     side: Side = "n" if role == "limit" else "sw"  # over the outer curve, and inside the inner one
     return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role, side=side)
+
+
+def eqe_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec | None:
+    """The EQE over photon energy with its edge, both gaps and the tail; None where the cell has no EQE."""
+    eqe, edge = picture.entry.curves.eqe, picture.edge
+    if eqe is None or edge is None:
+        return None
+    energy = EV_NM / eqe.wavelength[::-1]
+    series = [Series("eqe", "EQE", energy, 100.0 * eqe.value[::-1], "cell")]
+    marks = []
+    high = max(105.0, 105.0 * float(np.max(eqe.value)))
+    if edge.energy.size:
+        scale = 50.0 / float(np.max(edge.slope))
+        series.append(Series("slope", "dEQE/dE", edge.energy, scale * edge.slope, "limit", "dotted"))
+        for name, gap, height in (("inflection", edge.inflection, 62.0), ("edge mean", edge.mean, 25.0)):
+            label = f"{name} {with_unit(gap, 'eV', 5)}"
+            marks.append(Mark(name, label, gap, height, "limit", "diamond", False, "se"))
+    note = "No tail extrapolated"
+    if edge.tail is not None:
+        below = np.linspace(edge.tail.start - 6.0 * edge.tail.slope, edge.tail.start, 60)
+        value = 100.0 * edge.tail.at(below)
+        series.append(Series("tail", "tail", below, value, "non-radiative", "dashed"))
+        note = f"Tail: exponential, {with_unit(1e3 * edge.tail.slope, 'meV', 3)}"
+    return PlotSpec(
+        title=f"{_name(picture)}: external quantum efficiency",
+        x_label="Photon energy (eV)",
+        y_label="EQE (%)",
+        x_range=round_range(float(energy[0]), float(energy[-1])),
+        y_range=round_range(0.0, high),
+        series=tuple(series),
+        marks=tuple(marks),
+        caption=(note, *caption_of(picture)) if captioned else (),
+        stale=STALE if stale else "",
+    )
 
 
 @lru_cache(maxsize=8)

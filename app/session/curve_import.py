@@ -20,6 +20,7 @@ from physics.quantum import Curve
 from physics.sweep import SweepFigures, density, figures_of_merit, hysteresis
 
 _NO_AREA = "The file gives currents, not densities: type the cell's area first, then open the file again."
+_FITTED = (("n", "ideality"), ("rs", "rs"), ("rsh", "rsh"))
 _DIGITS = 6  # figures are kept to more digits than any of them is known to
 
 
@@ -145,7 +146,10 @@ def _put_fit(take: _Taking, fit: DiodeFit) -> None:
     if not fit.converged:
         take.sentences.append(f"No one-diode fit: {fit.message}")
         return
-    for name, key in (("n", "ideality"), ("rs", "rs"), ("rsh", "rsh")):
+    told = [FIELD_BY_KEY[key].symbol for name, key in _FITTED if fit.parameters[name].status == "fitted"]
+    if told:
+        take.sentences.append(f"{', '.join(told)} from a one-diode fit.")
+    for name, key in _FITTED:
         parameter, about = fit.parameters[name], FIELD_BY_KEY[key]
         if parameter.status == "fitted":
             take.put(key, parameter.value, "fit")

@@ -9,10 +9,12 @@ from functools import lru_cache
 import numpy as np
 
 from app.session.appraisal import Appraisal, appraise
+from app.session.curves import edge_for
 from app.session.light import light_named
 from app.session.session import Session
 from app.session.state import CellEntry, Choices
 from physics.diode import Diode, matching_ideality
+from physics.edge import Edge
 from physics.ledger import Ledger
 from physics.limit import Faces, Limit, detailed_balance_limit
 from physics.units import Array
@@ -43,6 +45,8 @@ class Picture:
         Ledger of that one cell (shape ()).
     cell_curve, limit_curve : Curve
         J–V curve through the cell's Voc, Jsc and FF, and that of its limit.
+    edge : Edge or None
+        Edge of the EQE; None where there is no EQE.
     gap_curve : Limit
         Limits over the gaps that a single junction may have, same light and temperature, shape (n,).
     """
@@ -53,6 +57,7 @@ class Picture:
     cell_curve: Curve
     limit_curve: Curve
     gap_curve: Limit
+    edge: Edge | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -113,7 +118,8 @@ def picture_of(appraisal: Appraisal, choices: Choices, earlier: Picture | None =
     cell = ledger.cell
     near = math.nan if earlier is None else earlier.cell_curve.ideality
     gaps = gap_curve(entry.spectrum, float(cell.irradiance), float(cell.temperature), choices.faces)
-    return Picture(entry, choices, ledger, cell_curve(ledger, near), limit_curve(ledger.limit), gaps)
+    edge = None if entry.curves.eqe is None else edge_for(entry.curves.eqe)
+    return Picture(entry, choices, ledger, cell_curve(ledger, near), limit_curve(ledger.limit), gaps, edge)
 
 
 class Outcomes:

@@ -241,7 +241,7 @@ class Actions(QObject):
             self._say("No gap can be read off this EQE.")
 
     def _take_cells(self, data: bytes, path: Path) -> None:
-        entries, left_out = entries_from(read_table(data, path.name), path.name)
+        entries, left_out = entries_from(read_table(data, path.name), path.name, path.parent)
         if entries:
             self._session.do(AddCells(entries, "opening of a table"))
         sentence = f"{len(entries)} cell{'' if len(entries) == 1 else 's'} taken from {path.name}."

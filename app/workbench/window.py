@@ -6,9 +6,10 @@ from pathlib import Path
 
 from PySide6.QtCore import QEvent, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
-from PySide6.QtWidgets import QMainWindow, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QMainWindow, QSplitter, QTabWidget, QVBoxLayout, QWidget
 
-from app.figures.charts import gap_plot_of, jv_plot_of, waterfall_of
+from app.figures.charts import eqe_plot_of, gap_plot_of, jv_plot_of, waterfall_of
+from app.figures.spec import PlotSpec
 from app.ledger_rows import ledger_rows
 from app.session.commands import RemoveCell
 from app.session.outcome import Outcome, Outcomes
@@ -44,6 +45,7 @@ class Window(QMainWindow):
         self.waterfall = WaterfallView(self.theme)
         self.jv_plot = PlotView("Current density against voltage", self.theme)
         self.gap_plot = PlotView("Efficiency against the gap", self.theme)
+        self.eqe_plot = PlotView("External quantum efficiency", self.theme)
         self.table = LedgerTable(self.theme)
         self.explanation = ExplainPanel(self.theme)
         self.notices = NoticeBar()
@@ -71,7 +73,17 @@ class Window(QMainWindow):
         left.setSizes([170, 580])
         plots = QSplitter(Qt.Orientation.Horizontal)
         plots.addWidget(self.jv_plot)
-        plots.addWidget(self.gap_plot)
+        self._tabs = QTabWidget()
+        self._tabs.setDocumentMode(True)
+        self._tabs.addTab(self.gap_plot, "&Limits")
+        self._tabs.addTab(self.eqe_plot, "E&QE")
+        self._tabs.setTabVisible(1, False)
+        self._tabs.tabBar().setVisible(False)
+        self._tabs.currentChanged.connect(lambda _: self._due.start())
+        plots.addWidget(self._tabs)
+        plots.setStretchFactor(0, 1)
+        plots.setStretchFactor(1, 1)
+        plots.setSizes([289, 289])
         middle = QSplitter(Qt.Orientation.Vertical)
         middle.addWidget(self.waterfall)
         middle.addWidget(plots)
@@ -136,10 +148,20 @@ class Window(QMainWindow):
             self.waterfall.show_spec(None, "", _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL)
             self.jv_plot.show_spec(None)
             self.gap_plot.show_spec(None)
+            self._show_eqe(None)
             return
         self.waterfall.show_spec(waterfall_of(picture, stale), self.session.state.line)
         self.jv_plot.show_spec(jv_plot_of(picture, stale, captioned=False))
         self.gap_plot.show_spec(gap_plot_of(picture, stale, captioned=False))
+        self._show_eqe(eqe_plot_of(picture, stale, captioned=False))
+
+    def _show_eqe(self, spec: PlotSpec | None) -> None:
+        """The plot of the EQE has a place of its own only where there is one."""
+        self._tabs.setTabVisible(1, spec is not None)
+        self._tabs.tabBar().setVisible(spec is not None)
+        if spec is not None and self._tabs.currentIndex() == 1:
+            _ = self.eqe_plot.canvas  # made on first need
+            self.eqe_plot.show_spec(spec)
 
     def _show_texts(self) -> None:
         state, outcome = self.session.state, self.outcomes.current()

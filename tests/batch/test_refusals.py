@@ -47,10 +47,9 @@ UNUSABLE: list[tuple[str, str | bytes, str]] = [
         "“cells.csv” lacks the column gap_eV.",
     ),
     (
-        "curve files only",
+        "a sweep but no gap",
         "name,jv_file\na,a.txt\n",
-        "“cells.csv” lacks the columns gap_eV, voc_V, jsc_mA_cm2 and ff_pct. "
-        "Curve files (jv_file) are not read by this version.",
+        "“cells.csv” lacks the column gap_eV.",
     ),
     (
         "a current in place of its density",
@@ -220,14 +219,14 @@ REFUSED: list[tuple[str, str, list[tuple[str, str]]]] = [
         [
             (
                 "jv_file",
-                "Line 3: J–V files are not read by this version: leave jv_file empty and give Voc, Jsc and FF.",
+                "Line 3: “a.txt” does not exist: check the name and the folder.",
             )
         ],
     ),
     (
         "an EQE file",
         _with("eqe_file", "a.txt"),
-        [("eqe_file", "Line 3: EQE files are not read by this version: leave eqe_file empty and give the gap.")],
+        [("eqe_file", "Line 3: “a.txt” does not exist: check the name and the folder.")],
     ),
     (
         "an uncertainty",
@@ -307,7 +306,7 @@ def test_doubtful_row_is_computed(command: Command) -> None:
     assert done.out.startswith("1 cell computed, 0 refused, 1 doubtful figure; see “")
 
 
-def test_empty_columns_of_later_versions_do_no_harm(command: Command) -> None:
+def test_empty_columns_do_no_harm(command: Command) -> None:
     done = command(f"{HEADER},jv_file,eqe_file,u_voc_V,reference\n{GOOD},,,,step\nsecond,1.6,1.05,23.9,77.6,,, ,\n")
     assert (done.status, done.problems()) == (0, [])
     assert "jv_file" not in done.rows("summary")[0]

@@ -266,7 +266,7 @@ def test_numbers_read_back_bit_for_bit(
         (summary,) = rows_of(home / "out" / "summary.csv")
         columns = ("gap_eV", "voc_V", "jsc_mA_cm2", "ff_pct", "temperature_C", "area_cm2", "ere")
         assert tuple(float(summary[column]) for column in columns) == given_row
-        (portion,) = portions_of(load_table(cells), "log-mean")
+        (portion,) = portions_of(load_table(cells), "log-mean", cells.parent)
         written = rows_of(home / "out" / "ledger.csv")
         present = portion.form[0] >= 0
         assert [float(row["loss_mW_cm2"]) for row in written] == portion.loss[0, present].tolist()

@@ -1,0 +1,112 @@
+"""Measured curves opened in the window."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import numpy as np
+import pytest
+from PySide6.QtGui import QAction
+
+from app.figures.charts import eqe_plot_of, jv_plot_of
+from app.workbench.window import Window
+from physics.diode import Diode
+from physics.units import EV_NM
+
+from .conftest import settle
+
+
+def _write_sweep(path: Path) -> Path:
+    """n = 1.4, Rs = 2 Ω cm², Rsh = 2000 Ω cm², a little noise, decimal commas, current negative and in A/m²."""
+    voltage, current = Diode.through(1.1, 22.0, 298.15, 1.4, 2.0, 2000.0).curve(150)
+    noisy = current + 0.01 * np.random.default_rng(2).standard_normal(current.size)
+    rows = [f"{v:.5f};{-10 * j:.4f}".replace(".", ",") for v, j in zip(voltage, noisy, strict=True)]
+    path.write_text("Cell 7\nVoltage (V);Current density (A/m²)\n" + "\n".join(rows), encoding="cp1252")
+    return path
+
+
+def _write_eqe(path: Path) -> Path:
+    """A logistic edge at 1.6 eV, 15 meV wide."""
+    wavelength = np.arange(900.0, 315.0, -5.0)
+    eqe = 0.85 / (1.0 + np.exp(-(EV_NM / wavelength - 1.6) / 0.015))
+    rows = [f"{w:.0f}\t{q:.7f}" for w, q in zip(wavelength, eqe, strict=True)]
+    path.write_text("lambda (nm)\tEQE\n" + "\n".join(rows))
+    return path
+
+
+def _action(window: Window, text: str) -> QAction:
+    return next(action for action in window.actions_.findChildren(QAction) if text in action.text().replace("&", ""))
+
+
+def test_curves_make_a_ledger_out_of_nothing(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    window.actions_.open_file(_write_sweep(tmp_path / "sweep.txt"))
+    settle()
+    assert "one-diode fit" in window.notices.text.text()
+    picture = window.outcomes.current().picture
+    assert picture is not None
+    assert float(picture.ledger.cell.gap) == pytest.approx(1.6, abs=0.0005)
+    assert window.inputs.fields["rs"].entry.text().startswith(("1.9", "2.0"))
+    bases = {row.key: row.basis for row in window.table._model.rows}
+    assert bases["voltage_edge"].startswith("fitted: from the EQE")
+    assert bases["fill_series"] == "fitted: one-diode fit to the sweep"
+    assert "uncollected" in bases
+
+
+def test_the_plots_show_what_was_measured(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    assert not window._tabs.isTabVisible(1)
+    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    window.actions_.open_file(_write_sweep(tmp_path / "sweep.txt"))
+    settle()
+    assert window._tabs.isTabVisible(1)
+    window._tabs.setCurrentIndex(1)
+    settle()
+    picture = window.outcomes.current().picture
+    assert picture is not None
+    shown = window.eqe_plot._spec
+    assert shown is not None
+    assert [series.key for series in shown.series] == ["eqe", "slope", "tail"]
+    assert shown.marks[0].x == pytest.approx(1.6, abs=0.0005)
+    assert "measured" in window.jv_plot.key.text()
+    assert "modelled" not in window.jv_plot.key.text()
+    sweep = jv_plot_of(picture).series[1]
+    assert sweep.y.max() == pytest.approx(22.0, abs=0.1)
+    assert eqe_plot_of(picture) is not None
+
+
+def test_the_gap_follows_the_definition_chosen_and_can_be_undone(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    settle()
+    window.inputs.fields["gap"].asked.emit(1.7)
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert "gap" not in cell.sources
+    _action(window, "edge mean").trigger()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert cell.sources["gap"] == "edge mean"
+    assert cell.values["gap"] == pytest.approx(1.6, abs=0.0005)
+    assert window.session.undo_name == "gap from the edge mean"
+    window.session.undo()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert cell.values["gap"] == 1.7
+
+
+def test_a_cell_without_an_eqe_is_told_what_to_do(window: Window) -> None:
+    _action(window, "inflection").trigger()
+    assert "has no EQE" in window.notices.text.text()
+
+
+def test_a_file_that_is_neither_is_told_and_changes_nothing(window: Window, tmp_path: Path) -> None:
+    (tmp_path / "letter.txt").write_text("Dear all,\nthe measurement is postponed.\nBest wishes\n")
+    before = window.session.state
+    window.actions_.open_file(tmp_path / "letter.txt")
+    assert window.session.state == before
+    assert "letter.txt" in window.notices.text.text()
