@@ -26,9 +26,11 @@ from app.session.state import CellEntry, Choices, Value
 from app.workbench.number_field import ignore_wheel
 
 if TYPE_CHECKING:
+    from app.files.measured import MeasuredText, Reading
     from app.session.curves import Source
     from app.workbench.export_panel import ExportPanel
     from app.workbench.help_panel import HelpPanel
+    from app.workbench.import_panel import ImportPanel
     from app.workbench.window import Window
 
 
@@ -41,6 +43,9 @@ class Actions(QObject):
         self._session = window.session
         self._export: ExportPanel | None = None
         self._help: HelpPanel | None = None
+        self._import: ImportPanel | None = None
+        self._waiting: list[tuple[MeasuredText, Reading]] = []
+        self._choices: dict[str, Reading] = {}  # how files of a shape were read the last time
         self._needs_picture: list[QAction] = []
         self._needs_cell: list[QAction] = []
         self._fill_menus()
@@ -156,7 +161,7 @@ class Actions(QObject):
 
     def close_panels(self) -> None:
         """Close the windows beside the main one."""
-        for panel in (self._export, self._help):
+        for panel in (self._export, self._help, self._import):
             if panel is not None:
                 panel.close()
 
@@ -210,19 +215,48 @@ class Actions(QObject):
             self._say(str(fault), lasting=True)
 
     def _take_curves(self, data: bytes, path: Path) -> None:
-        from app.files.measured import apply, guess, read_measured
-        from app.session.curve_import import taken
+        """Show what was understood of a file of curves; it is taken from there."""
+        from app.files.measured import guess, read_measured, remembered, shape_key
 
         text = read_measured(data, path.name)
-        reading = guess(text)
-        cell = self._session.state.cell or CellEntry(0, path.stem)
-        command, sentences = taken(apply(text, reading), cell, path.name)
-        if self._session.state.cell is None:
-            self._session.do(AddCells((cell,)))
-            command = replace(command, ident=self._session.state.cells[-1].ident)
-        self._session.do(command)
-        questions = f" To be checked: {' '.join(reading.questions)}" if reading.questions else ""
-        self._say(f"{path.name}: {' '.join(sentences)}{questions}", lasting=True)
+        choice = self._choices.get(shape_key(text))
+        self._waiting.append((text, guess(text) if choice is None else remembered(text, choice)))
+        if self._import is None or not self._import.isVisible():
+            self._preview_next()
+
+    def _preview_next(self) -> None:
+        """Bring up the next file that waits to be looked at."""
+        from app.workbench.import_panel import ImportPanel
+
+        if self._import is None:
+            self._import = ImportPanel(self._window.theme, self._window)
+            self._import.taken.connect(self._take_shown)
+            self._import.rejected.connect(self._preview_next)
+        if self._waiting:
+            self._import.show_file(*self._waiting.pop(0))
+
+    def _take_shown(self) -> None:
+        """Give the cell on show the curves of the file that was looked at."""
+        from app.files.measured import shape_key
+        from app.session.curve_import import taken
+
+        panel = self._import
+        if panel is None or panel.text is None or panel.reading is None:
+            return
+        self._choices[shape_key(panel.text)] = panel.reading
+        source = panel.text.source
+        cell = self._session.state.cell or CellEntry(0, Path(source).stem)
+        try:
+            command, sentences = taken(panel.curves, cell, source)
+        except TableError as fault:
+            self._say(str(fault), lasting=True)
+        else:
+            if self._session.state.cell is None:
+                self._session.do(AddCells((cell,)))
+                command = replace(command, ident=self._session.state.cells[-1].ident)
+            self._session.do(command)
+            self._say(f"{source}: {' '.join(sentences)}", lasting=True)
+        self._preview_next()
 
     def _take_gap(self, source: Source) -> None:
         """Set the gap by one of the EQE's definitions."""

@@ -7,8 +7,10 @@ from pathlib import Path
 import numpy as np
 import pytest
 from PySide6.QtGui import QAction
+from PySide6.QtWidgets import QComboBox
 
 from app.figures.charts import eqe_plot_of, jv_plot_of
+from app.workbench.import_panel import ImportPanel
 from app.workbench.window import Window
 from physics.diode import Diode
 from physics.units import EV_NM
@@ -34,14 +36,25 @@ def _write_eqe(path: Path) -> Path:
     return path
 
 
+def _open(window: Window, path: Path) -> ImportPanel:
+    """Open a file and take it as it was understood."""
+    window.actions_.open_file(path)
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    panel.take()
+    settle()
+    return panel
+
+
 def _action(window: Window, text: str) -> QAction:
     return next(action for action in window.actions_.findChildren(QAction) if text in action.text().replace("&", ""))
 
 
 def test_curves_make_a_ledger_out_of_nothing(empty_window: Window, tmp_path: Path) -> None:
     window = empty_window
-    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
-    window.actions_.open_file(_write_sweep(tmp_path / "sweep.txt"))
+    _open(window, _write_eqe(tmp_path / "eqe.txt"))
+    _open(window, _write_sweep(tmp_path / "sweep.txt"))
     settle()
     assert "one-diode fit" in window.notices.text.text()
     picture = window.outcomes.current().picture
@@ -57,8 +70,8 @@ def test_curves_make_a_ledger_out_of_nothing(empty_window: Window, tmp_path: Pat
 def test_the_plots_show_what_was_measured(empty_window: Window, tmp_path: Path) -> None:
     window = empty_window
     assert not window._tabs.isTabVisible(1)
-    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
-    window.actions_.open_file(_write_sweep(tmp_path / "sweep.txt"))
+    _open(window, _write_eqe(tmp_path / "eqe.txt"))
+    _open(window, _write_sweep(tmp_path / "sweep.txt"))
     settle()
     assert window._tabs.isTabVisible(1)
     window._tabs.setCurrentIndex(1)
@@ -78,7 +91,7 @@ def test_the_plots_show_what_was_measured(empty_window: Window, tmp_path: Path) 
 
 def test_the_gap_follows_the_definition_chosen_and_can_be_undone(empty_window: Window, tmp_path: Path) -> None:
     window = empty_window
-    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    _open(window, _write_eqe(tmp_path / "eqe.txt"))
     settle()
     window.inputs.fields["gap"].asked.emit(1.7)
     settle()
@@ -110,3 +123,56 @@ def test_a_file_that_is_neither_is_told_and_changes_nothing(window: Window, tmp_
     window.actions_.open_file(tmp_path / "letter.txt")
     assert window.session.state == before
     assert "letter.txt" in window.notices.text.text()
+
+
+def test_what_was_understood_can_be_changed_and_is_remembered(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    rows = "\n".join(f"{w},{80.0 / (1.0 + np.exp(-(EV_NM / w - 1.6) / 0.015)):.5f}" for w in range(320, 900, 5))
+    (tmp_path / "bare.csv").write_text(f"a,b\n{rows}\n")
+    before = window.session.state
+    window.actions_.open_file(tmp_path / "bare.csv")
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    assert panel.isVisible()
+    assert window.session.state == before  # nothing is taken before the user says so
+    panel.kind.setCurrentIndex(panel.kind.findData("eqe"))
+    panel.kind.activated.emit(panel.kind.currentIndex())
+    for column, unit in ((3, "nm"), (5, "%")):
+        box = panel.traces.cellWidget(0, column)
+        assert isinstance(box, QComboBox)
+        box.setCurrentIndex(box.findData(unit))
+        box.activated.emit(box.currentIndex())
+    assert panel.take_button.isEnabled()
+    assert panel.preview.item(0, 0).text() == "320.000"
+    assert panel.preview.item(0, 1).text() == "80.0000"
+    panel.take()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert cell.curves.eqe is not None
+    (tmp_path / "again.csv").write_text(f"a,b\n{rows}\n")
+    window.actions_.open_file(tmp_path / "again.csv")
+    settle()
+    assert panel.kind.currentData() == "eqe"
+    assert panel.take_button.isEnabled()
+    assert "again.csv" in panel.windowTitle()
+
+
+def test_a_file_put_aside_changes_nothing_and_the_next_comes_up(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    before = window.session.state
+    window.actions_.open_file(_write_eqe(tmp_path / "first.txt"))
+    window.actions_.open_file(_write_sweep(tmp_path / "second.txt"))
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    assert "first.txt" in panel.windowTitle()
+    panel.reject()
+    settle()
+    assert window.session.state == before
+    assert "second.txt" in panel.windowTitle()
+    assert panel.isVisible()
+    panel.reject()
+    settle()
+    assert not panel.isVisible()
