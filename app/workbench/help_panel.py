@@ -20,7 +20,8 @@ proper waste.</li>
 unless both faces are chosen, which costs 18 mV at 25 °C. Losses from the limit to the cell are shared by logarithmic
 means, which depend on no order, or by the ladder current → voltage → fill factor. Both add up exactly.</p>
 <p>Basis: <b>measured</b> follows from your figures, <b>calculated</b> from gap, temperature and spectrum alone,
-<b>assumed</b> rests on an assumption, which is named; assumed bars have a broken outline. A bar with an arrow is a
+<b>fitted</b> rests on a fit to a measured curve, <b>assumed</b> on an assumption, which is named; assumed bars have a
+broken outline. A bar with an arrow is a
 gain.</p>
 <h3>Keys</h3>
 <table cellspacing="4">
@@ -29,7 +30,7 @@ gain.</p>
 <tr><td>Ctrl+Z, Ctrl+Y</td><td>undo, redo</td></tr>
 <tr><td>Ctrl+E, Ctrl+Shift+C</td><td>export a picture, copy the waterfall</td></tr>
 <tr><td>Ctrl+Shift+T, Ctrl+Shift+S</td><td>copy the ledger as a table, save it as CSV</td></tr>
-<tr><td>Ctrl+O, Ctrl+S</td><td>open a table of cells, save the shelf as one</td></tr>
+<tr><td>Ctrl+O, Ctrl+S</td><td>open a table of cells or measured curves, save the shelf as a table</td></tr>
 <tr><td>Arrow keys on the waterfall or the table</td><td>pick another line</td></tr>
 <tr><td>Wheel, drag, double click on a plot</td><td>zoom, move, show all</td></tr>
 </table>

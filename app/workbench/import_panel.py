@@ -36,8 +36,8 @@ from app.files.measured import (
     units_of,
 )
 from app.files.measured.units import Dimension
-from app.files.numbers import write_number
 from app.files.table_error import TableError
+from app.wording import with_unit
 from app.workbench.number_field import ignore_wheel
 from app.workbench.theme import Heading, Theme
 
@@ -57,6 +57,7 @@ _DIMENSIONS: dict[Kind, tuple[tuple[Dimension, ...], tuple[Dimension, ...]]] = {
     "unknown": ((), ()),
 }
 _HEADS = ("Take", "Curve", "First column", "Unit", "Second column", "Unit", "Sign of the second", "Light")
+_MARKS = ((".", "point: 1.5"), (",", "comma: 1,5"))
 _SIGNS = (("as written", 1), ("turned round", -1))
 _LIGHT: dict[bool | None, str] = {None: "not told", True: "under light", False: "dark"}
 
@@ -110,6 +111,12 @@ class ImportPanel(QDialog):
         self.kind.setAccessibleName("What the file holds")
         self.kind.activated.connect(self._choose_kind)
         ignore_wheel(self.kind)
+        self.decimal = QComboBox()
+        for mark, title in _MARKS:
+            self.decimal.addItem(title, mark)
+        self.decimal.setAccessibleName("Decimal mark")
+        self.decimal.activated.connect(self._choose_decimal)
+        ignore_wheel(self.decimal)
         self.traces = self._table("How each curve is read")
         self.preview = self._table("First numbers as understood")
         self.questions, self.fault = QLabel(), QLabel()
@@ -137,6 +144,10 @@ class ImportPanel(QDialog):
         label.setBuddy(self.kind)
         what.addWidget(label)
         what.addWidget(self.kind)
+        mark = QLabel("   Decimal mark")
+        mark.setBuddy(self.decimal)
+        what.addWidget(mark)
+        what.addWidget(self.decimal)
         what.addStretch(1)
         column = QVBoxLayout(self)
         column.addLayout(what)
@@ -167,6 +178,11 @@ class ImportPanel(QDialog):
             self.reading = guess(self.text, self.kind.currentData())
             self._fill()
 
+    def _choose_decimal(self) -> None:
+        if self.reading is not None:
+            self.reading = replace(self.reading, decimal=self.decimal.currentData(), questions=())
+            self._show_understood()
+
     def _change(self, at: int, **fields: object) -> None:
         if self.reading is not None:
             traces = list(self.reading.traces)
@@ -178,6 +194,7 @@ class ImportPanel(QDialog):
         if self.text is None or self.reading is None:
             return
         self.kind.setCurrentIndex(self.kind.findData(self.reading.kind))
+        self.decimal.setCurrentIndex(self.decimal.findData(self.reading.decimal))
         self.traces.clear()
         self.traces.setColumnCount(len(_HEADS))
         self.traces.setHorizontalHeaderLabels(list(_HEADS))
@@ -248,7 +265,7 @@ class ImportPanel(QDialog):
             heads += [f"{curve.title}\n{curve.heads[0]}", f"{curve.x.size} points\n{curve.heads[1]}"]
             for offset, values in ((0, curve.x), (1, curve.y)):
                 for row, value in enumerate(values[:_ROWS].tolist()):
-                    item = QTableWidgetItem(write_number(value, 6) if np.isfinite(value) else "–")
+                    item = QTableWidgetItem(with_unit(value, "", 6) if np.isfinite(value) else "–")
                     item.setTextAlignment(Qt.AlignmentFlag.AlignRight | Qt.AlignmentFlag.AlignVCenter)
                     self.preview.setItem(row, 2 * at + offset, item)
         self.preview.setHorizontalHeaderLabels(heads)

@@ -144,8 +144,8 @@ def test_what_was_understood_can_be_changed_and_is_remembered(empty_window: Wind
         box.setCurrentIndex(box.findData(unit))
         box.activated.emit(box.currentIndex())
     assert panel.take_button.isEnabled()
-    assert panel.preview.item(0, 0).text() == "320.000"
-    assert panel.preview.item(0, 1).text() == "80.0000"
+    assert panel.preview.item(0, 0).text() == "320"
+    assert panel.preview.item(0, 1).text() == "80"
     panel.take()
     settle()
     cell = window.session.state.cell
@@ -176,3 +176,20 @@ def test_a_file_put_aside_changes_nothing_and_the_next_comes_up(empty_window: Wi
     panel.reject()
     settle()
     assert not panel.isVisible()
+
+
+def test_a_doubtful_comma_is_asked_about_and_can_be_settled(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    lines = "1,000;1,935\n1,100;1,926\n1,150;1,917\n1,200;1,881"
+    (tmp_path / "doubt.txt").write_text(f"Voltage (mV);Current (µA)\n{lines}\n", encoding="utf-8")
+    window.actions_.open_file(tmp_path / "doubt.txt")
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    assert "decimal marks or part thousands" in panel.questions.text()
+    assert panel.preview.item(1, 0).text() == "0.0011"
+    panel.decimal.setCurrentIndex(panel.decimal.findData("."))
+    panel.decimal.activated.emit(0)
+    assert panel.preview.item(1, 0).text() == "1.1"
+    assert panel.questions.text() == ""
+    panel.reject()
