@@ -124,20 +124,37 @@ class Ledger:
         }
 
 
+#: The index of a form for a single cell: arrays made once, because a ledger of one cell is worked out at each tick.
+_ONE_CELL = {index: np.array(index, dtype=np.intp) for index in range(-1, 8)}
+for _index in _ONE_CELL.values():
+    _index.flags.writeable = False
+
+
+def _everywhere(shape: tuple[int, ...], index: int) -> Indices:
+    """The same index for all cells."""
+    return np.full(shape, index, dtype=np.intp) if shape else _ONE_CELL[index]
+
+
 def _work_out(line: Line, q: Quantities) -> Entry:
     """One line for all cells: the first form that applies to a cell gives its Δ."""
     shape = q.incident.shape
-    masks = [None if option.applies is None else option.applies(q) for option in line.forms]
-    if masks[0] is None or masks[0].all():  # by far the most frequent case, and the quickest
-        delta, form = line.forms[0].delta(q), np.zeros(shape, dtype=np.intp)
-    else:
-        delta, form = np.zeros(shape), np.full(shape, -1, dtype=np.intp)
-        for index in reversed(range(len(masks))):  # an earlier form overrules a later one
-            mask = masks[index]
-            chosen = np.ones(shape, dtype=bool) if mask is None else mask
-            if chosen.any():
-                delta = np.where(chosen, line.forms[index].delta(q), delta)
-                form = np.where(chosen, index, form)
+    used: list[tuple[int, Mask]] = []
+    for index, option in enumerate(line.forms):
+        mask = None if option.applies is None else option.applies(q)
+        if mask is None or mask.all():
+            if not used:  # by far the most frequent case, and the quickest
+                delta = option.delta(q)
+                return Entry(line, delta, line.factor.weight(q) * delta, _everywhere(shape, index))
+            used.append((index, np.ones(shape, dtype=bool)))
+            break
+        if mask.any():
+            used.append((index, mask))
+    delta, form = np.zeros(shape), _everywhere(shape, -1)
+    if not used:
+        return Entry(line, delta, delta, form)
+    for index, mask in reversed(used):  # an earlier form overrules a later one
+        delta = np.where(mask, line.forms[index].delta(q), delta)
+        form = np.where(mask, index, form)
     return Entry(line, delta, line.factor.weight(q) * delta, form)
 
 

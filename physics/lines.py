@@ -148,11 +148,7 @@ class Line:
 
 
 def _known(name: str) -> Callable[[Quantities], Mask]:
-    def mask(q: Quantities) -> Mask:
-        values: Array = getattr(q, name)
-        return ~np.isnan(values)
-
-    return mask
+    return lambda q: q.knows(name)
 
 
 _SQ = "Shockley and Queisser 1961, doi:10.1063/1.1736034"
@@ -166,8 +162,8 @@ _HAS_ERE, _HAS_PFF, _HAS_EQE, _HAS_R = (_known(name) for name in ("ere", "pseudo
 _HAS_N, _HAS_RS, _HAS_RSH = _known("ideality"), _known("rs"), _known("rsh")
 
 
-def _both(*masks: Callable[[Quantities], Mask]) -> Callable[[Quantities], Mask]:
-    return lambda q: np.logical_and.reduce([mask(q) for mask in masks])
+def _both(one: Callable[[Quantities], Mask], other: Callable[[Quantities], Mask]) -> Callable[[Quantities], Mask]:
+    return lambda q: one(q) & other(q)
 
 
 def _fitted(q: Quantities) -> Mask:
@@ -183,7 +179,7 @@ def _with_or_without_ideality(
 ) -> tuple[Form, ...]:
     """A resistance line rests on the cell's ideality; where that is unknown, on an ideal diode."""
     return (
-        Form(equation, delta, Basis.FITTED, _FIT, _both(known, _HAS_N, _fitted)),
+        Form(equation, delta, Basis.FITTED, _FIT, _both(_fitted, _both(known, _HAS_N))),
         Form(equation, delta, Basis.MEASURED, "", _both(known, _HAS_N)),
         Form(equation, delta, Basis.ASSUMED, "n = 1, as no ideality is given", known),
     )

@@ -70,6 +70,14 @@ class Quantities:
     weight_voltage: Array = _quantity("w_V", "mA cm⁻²", "power per unit of voltage")
     weight_fill: Array = _quantity("w_FF", "mW cm⁻²", "power per unit of fill factor")
 
+    def knows(self, name: str) -> Mask:
+        """Which cells have a number for the quantity called `name`; worked out once, for all lines that ask."""
+        masks: dict[str, Mask] = self.__dict__.setdefault("_known", {})
+        mask = masks.get(name)
+        if mask is None:
+            mask = masks[name] = ~np.isnan(getattr(self, name))
+        return mask
+
 
 def meaning(name: str) -> Meaning:
     """Meaning of the quantity called `name`.
@@ -105,8 +113,11 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
     """
     vt = thermal_voltage(cell.temperature)
     voc_limit_at_jsc = vt * np.log1p(cell.jsc / limit.j0)
-    j0_rad = np.where(np.isnan(cell.j0_rad), limit.j0, cell.j0_rad)
-    voc_rad = vt * np.log1p(cell.jsc / np.where(j0_rad > 0, j0_rad, np.nan))
+    j0_rad, voc_rad = limit.j0, voc_limit_at_jsc
+    step = np.isnan(cell.j0_rad)
+    if not step.all():
+        j0_rad = np.where(step, limit.j0, cell.j0_rad)
+        voc_rad = vt * np.log1p(cell.jsc / np.where(j0_rad > 0, j0_rad, np.nan))
     weights = factor_weights(
         (limit.jsc, limit.voc, limit.ff), (cell.jsc, cell.voc, cell.ff), attribution
     )

@@ -157,8 +157,9 @@ class Window(QMainWindow):
 
     def _show_eqe(self, spec: PlotSpec | None) -> None:
         """The plot of the EQE has a place of its own only where there is one."""
-        self._tabs.setTabVisible(1, spec is not None)
-        self._tabs.tabBar().setVisible(spec is not None)
+        if self._tabs.isTabVisible(1) != (spec is not None):  # Qt lays the tabs out anew at each call
+            self._tabs.setTabVisible(1, spec is not None)
+            self._tabs.tabBar().setVisible(spec is not None)
         if spec is not None and self._tabs.currentIndex() == 1:
             _ = self.eqe_plot.canvas  # made on first need
             self.eqe_plot.show_spec(spec)
