@@ -200,7 +200,11 @@ def _step(curve: DiodeCurve, jacobian: Array, left: Array, damping: float) -> Ar
     for _ in range(3):
         part = scaled[:, free]
         right = left - jacobian[:, ~free] @ step[~free]
-        step[free] = np.linalg.solve(part.T @ part + damping * np.eye(int(free.sum())), part.T @ right) / size[free]
+        try:
+            solved = np.linalg.solve(part.T @ part + damping * np.eye(int(free.sum())), part.T @ right)
+        except np.linalg.LinAlgError:  # the points say nothing of some parameter: stay
+            return np.zeros(5)
+        step[free] = solved / size[free]
         below = free & (parameters + step < 0.0)
         below[:3] = False
         if not below.any():

@@ -120,10 +120,10 @@ def fit_one_diode(voltage: ArrayLike, current: ArrayLike, temperature: float, *,
 def _refusal(sweep: Oriented, lit: bool) -> str:
     if sweep.voltage.size < FEWEST:
         return f"A one-diode fit needs at least {FEWEST} points; this sweep has {sweep.voltage.size}."
-    if not (lit and sweep.lit):
-        return "This is a dark sweep; the fit of n, Rs, Rsh, J_L and J0 needs a lit one."
     if np.unique(sweep.voltage).size < FEWEST:
         return f"A one-diode fit needs at least {FEWEST} different voltages."
+    if not (lit and sweep.lit):
+        return "This is a dark sweep; the fit of n, Rs, Rsh, J_L and J0 needs a lit one."
     _, jsc = rough_figures(sweep.voltage, sweep.current)
     if np.median(sweep.current[-3:]) > _FALLEN * jsc:
         return "The sweep ends in its flat part, before the current falls; n, Rs and J0 cannot be told from it."

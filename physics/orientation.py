@@ -9,6 +9,7 @@ from numpy.typing import ArrayLike
 
 from physics.units import Array
 
+_NANOVOLT = 1e-9  # [V]
 FEWEST = 10  #: Points below which a sweep is not looked at.
 _SURE = 5.0  # standard deviations that a photocurrent must stand out of the noise
 _LEVEL = 0.02  # share of the current by which a sweep must fall to tell its sign
@@ -70,8 +71,12 @@ def oriented(voltage: ArrayLike, current: ArrayLike) -> Oriented:
     finite = np.isfinite(v) & np.isfinite(j)
     v, j = v[finite], j[finite]
     order = np.argsort(v, kind="stable")
-    v, j = v[order], j[order]
+    v, j = _snapped(v[order]), j[order]
     left_out = int(finite.size - v.size)
+    different = np.unique(v).size
+    if different < min(FEWEST, v.size):  # too few of them differ
+        message = f"A sweep of {different} different voltages is too short to be read."
+        return Oriented(v, j, False, False, False, left_out, message)
     if v.size < FEWEST:
         return Oriented(v, j, False, False, False, left_out, f"A sweep of {v.size} points is too short to be read.")
     smooth = smoothed(j)
@@ -89,6 +94,13 @@ def oriented(voltage: ArrayLike, current: ArrayLike) -> Oriented:
     photocurrent = float(generating[0]) if generating.size else float(smooth[-1])
     lit = photocurrent > 0.0 and _stands_out(photocurrent, smooth, noise)
     return Oriented(v, j, lit, flipped != swapped, swapped, left_out, _doubt(photocurrent, smooth, lit))
+
+
+def _snapped(v: Array) -> Array:
+    """Rising voltages [V], those less than a nanovolt above their neighbour taken as the same: no meter tells them."""
+    together = np.concatenate([[False], np.diff(v) < _NANOVOLT])
+    first = np.where(together, 0, np.arange(v.size))
+    return v[np.maximum.accumulate(first)] if v.size else v
 
 
 def _stands_out(current: float, smooth: Array, noise: float) -> bool:

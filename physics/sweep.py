@@ -125,7 +125,8 @@ def figures_of_merit(voltage: ArrayLike, current: ArrayLike, irradiance: float =
     if not sweep.lit:
         message = sweep.message or "No photocurrent stands out of the noise: this looks like a dark sweep."
         return _without(sweep, message)
-    return _Reading(sweep).figures(irradiance)
+    with np.errstate(over="ignore", divide="ignore", invalid="ignore"):  # figures that come out of it are none
+        return _Reading(sweep).figures(irradiance)
 
 
 def _without(sweep: Oriented, message: str) -> SweepFigures:
@@ -147,6 +148,8 @@ class _Reading:
         self.data = self._data()
         jsc, voc, peak = self._short_circuit(), self._open_circuit(), self._maximum()
         power = peak["power"] if peak else None
+        if not self.notes and _stated(power) is None:
+            self.notes.append("No maximum power can be read off these points.")
         ff = power.over(jsc).over(voc) if power and jsc and voc else None
         return SweepFigures(
             _stated(jsc),
@@ -255,7 +258,10 @@ class _Reading:
 
 
 def _stated(linear: Linear | None) -> Estimate | None:
-    return None if linear is None else Estimate(float(linear.value), float(np.sqrt(linear.moves @ linear.moves)))
+    if linear is None:
+        return None
+    value, u = float(linear.value), float(np.sqrt(linear.moves @ linear.moves))
+    return Estimate(value, u) if np.isfinite([value, u]).all() else None
 
 
 def hysteresis(forward: SweepFigures, reverse: SweepFigures) -> Estimate | None:

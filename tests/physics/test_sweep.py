@@ -4,7 +4,7 @@ import math
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
 from scipy.optimize import brentq, minimize_scalar
@@ -259,6 +259,10 @@ def test_wrong_shapes() -> None:
         st.tuples(st.floats(-3, 3, allow_subnormal=False), st.floats(-1e3, 1e3, allow_subnormal=False)), max_size=60
     )
 )
+# Found by earlier runs: voltages that no meter tells apart, one voltage over and over, and points that fit nothing.
+@example([(0.0, 0.0), (0.0, 1.0), (0.0, 1.0), (1.0, 0.0), (2.0, 0.0), (0.5, 0.0), (0.75, 0.0), (1e-197, 0.0)] * 2)
+@example([(0.0, 1.0)] * 2 + [(0.0, 0.0)] * 8)
+@example([(0.0, 1.0)] * 5 + [(1.0, 1.0)] * 4 + [(2.2250738585072014e-308, 0.0)])
 def test_any_numbers_give_an_answer(points: list[tuple[float, float]]) -> None:
     v, j = np.array(points).reshape(-1, 2).T
     figures = figures_of_merit(v, j)
