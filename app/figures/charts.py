@@ -233,20 +233,24 @@ def eqe_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
         return None
     energy = EV_NM / eqe.wavelength[::-1]
     series = [Series("eqe", "EQE", energy, 100.0 * eqe.value[::-1], "cell")]
-    marks = []
+    marks: list[Mark] = []
     high = max(105.0, 105.0 * float(np.max(eqe.value)))
     if edge.energy.size:
         scale = 50.0 / float(np.max(edge.slope))
         series.append(Series("slope", "dEQE/dE", edge.energy, scale * edge.slope, "limit", "dotted"))
-        for name, gap, height in (("inflection", edge.inflection, 62.0), ("edge mean", edge.mean, 25.0)):
-            label = f"{name} {with_unit(gap, 'eV', 5)}"
-            marks.append(Mark(name, label, gap, height, "limit", "diamond", False, "se"))
+        inflection, mean = with_unit(edge.inflection, "eV", 5), with_unit(edge.mean, "eV", 5)
+        on_curve = 100.0 * float(eqe.at(edge.inflection))
+        marks = [
+            Mark("inflection", f"inflection {inflection}", edge.inflection, on_curve, "limit", "diamond", False, "se"),
+            Mark("mean", f"edge mean {mean}", edge.mean, 0.0, "limit", "diamond", False, "ne"),
+        ]
     note = "No tail extrapolated"
-    if edge.tail is not None:
-        below = np.linspace(edge.tail.start - 6.0 * edge.tail.slope, edge.tail.start, 60)
-        value = 100.0 * edge.tail.at(below)
+    tail, _ = edge.tail_at(float(picture.ledger.cell.temperature))  # as the ledger uses it
+    if tail is not None:
+        below = np.linspace(tail.start - 6.0 * tail.slope, tail.start, 60, endpoint=False)
+        value = 100.0 * tail.at(below)
         series.append(Series("tail", "tail", below, value, "non-radiative", "dashed"))
-        note = f"Tail: exponential, {with_unit(1e3 * edge.tail.slope, 'meV', 3)}"
+        note = f"Tail: exponential, {with_unit(1e3 * tail.slope, 'meV', 3)}"
     return PlotSpec(
         title=f"{_name(picture)}: external quantum efficiency",
         x_label="Photon energy (eV)",

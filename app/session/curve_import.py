@@ -11,7 +11,7 @@ from app.files.measured import EqeCurve, Irradiance, JvSweep, MeasuredCurve, Pai
 from app.files.numbers import write_number
 from app.files.table_error import TableError
 from app.session.commands import SetFigures
-from app.session.curves import Curves, Source, Sweep, gap_figures
+from app.session.curves import Curves, Source, Sweep, edge_for, gap_figures
 from app.session.fields import FIELD_BY_KEY
 from app.session.state import CellEntry, Value
 from physics.diode_fit import DiodeFit, fit_one_diode
@@ -180,6 +180,10 @@ def _take_eqe(take: _Taking, measured: EqeCurve) -> None:
     else:
         take.put("gap", found["inflection"], "inflection")
         take.sentences.append("EQE taken, and the gap from its inflection.")
+    _, faults = edge_for(curve).tail_at(take.number("temperature", 298.15))
+    take.sentences += [fault.value for fault in faults]
+    if measured.eqe.max() > 1.0:
+        take.sentences.append("The EQE exceeds 100 % somewhere: check its unit and the reference cell.")
 
 
 def _take_series(take: _Taking, measured: Pairs) -> None:

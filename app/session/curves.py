@@ -17,9 +17,6 @@ from physics.units import Array
 #: Where a figure in a field comes from, if it was not typed.
 Source = Literal["sweep", "fit", "inflection", "edge mean", "light series"]
 
-#: The gap of an EQE by either definition.
-GAP_SOURCES: tuple[Source, ...] = ("inflection", "edge mean")
-
 
 @dataclass(frozen=True, eq=False)
 class Sweep:

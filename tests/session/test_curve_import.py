@@ -5,11 +5,13 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
+from app.figures.charts import eqe_plot_of
 from app.files.measured import apply, guess, read_measured
 from app.files.table_error import TableError
 from app.session.appraisal import appraise
 from app.session.commands import AddCells, SetFigures, SetValue
 from app.session.curve_import import taken
+from app.session.outcome import picture_of
 from app.session.session import Session
 from app.session.state import CellEntry, Choices
 from physics.diode import Diode
@@ -98,6 +100,22 @@ def test_an_eqe_gives_the_gap_and_splits_the_current() -> None:
     assert bases["nonradiative"] == "fitted"
     assert {"uncollected", "sub_gap_current", "current_mismatch"} <= bases.keys()
     assert "current" not in bases
+
+
+def test_what_an_eqe_lacks_is_told_and_a_flat_tail_is_not_followed() -> None:
+    wavelength = np.arange(320.0, 900.0, 5.0)
+    flat = 104.0 / (1.0 + np.exp(-(EV_NM / wavelength - 1.6) / 0.04))  # flatter than kT, and above 100 %
+    rows = "\n".join(f"{w:.0f};{q:.6f}" for w, q in zip(wavelength, flat, strict=True))
+    session = _session(voc=1.1, jsc=20.0, ff=75.0)
+    told = " ".join(_take(session, f"Wavelength (nm);EQE (%)\n{rows}\n".encode()))
+    assert "flatter than kT" in told
+    assert "exceeds 100 %" in told
+    picture = picture_of(appraise(_cell(session), Choices()), Choices())
+    assert picture is not None
+    plot = eqe_plot_of(picture)
+    assert plot is not None
+    assert [series.key for series in plot.series] == ["eqe", "slope"]
+    assert _bases(session)["voltage_edge"] == "measured"
 
 
 def test_a_typed_gap_stays() -> None:
