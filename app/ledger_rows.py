@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from functools import lru_cache
+from typing import NamedTuple
 
 from app.files.table_output import tab_separated, write_table
 from app.session.outcome import Picture
@@ -13,8 +14,7 @@ from physics.lines import Section
 COLUMNS = ("line", "amount", "change", "basis")
 
 
-@dataclass(frozen=True)
-class LedgerRow:
+class LedgerRow(NamedTuple):
     """A line or a total of a ledger.
 
     Parameters
@@ -70,6 +70,7 @@ def _total(key: str, name: str, power: float, incident: float, basis: str) -> Le
     return LedgerRow(key, name, name, "", "", percent(share), "", basis, power, 100 * share, None, "", True)
 
 
+@lru_cache(maxsize=64)  # the lines down to the limit stay while the cell's figures change
 def _row(entry: Entry, incident: float) -> LedgerRow:
     factor, unit, _ = DELTA_SHOWN[entry.line.factor.unit]
     loss = float(entry.loss)

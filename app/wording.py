@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 import unicodedata
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import lru_cache
 
@@ -19,6 +20,7 @@ MINUS = "−"
 THIN = "\u2009"  # between a number and its unit
 
 
+@lru_cache(maxsize=256)
 def shown_name(name: str) -> str:
     """A name as it may stand inside a sentence: without control signs, and kept from turning what is beside it.
 
@@ -35,6 +37,7 @@ def unbroken(text: str) -> str:
     return text.replace(" ", "\u00a0")
 
 
+@lru_cache(maxsize=512)  # while one number moves, most others are asked for again
 def percent(fraction: float, decimals: int = 2) -> str:
     """A fraction as a percentage ("26.72 %")."""
     return f"{write_number(100.0 * fraction, decimals=decimals)}{THIN}%"
@@ -47,13 +50,14 @@ def signed(value: float, decimals: int) -> str:
     return text if zero or text.startswith(MINUS) else f"+{text}"
 
 
+@lru_cache(maxsize=512)
 def with_unit(value: float, unit: str, digits: int = 5) -> str:
     """A number to some significant digits, without trailing zeros, with its unit."""
     if value != value:
         return "unknown"
     if value in (float("inf"), float("-inf")):
         return "∞" if value > 0 else f"{MINUS}∞"
-    text = f"{value:.{digits}g}".replace("-", MINUS)
+    text = f"{value + 0.0:.{digits}g}".replace("-", MINUS)  # no "−0"
     if "e" in text:  # very large or very small: written with a power of ten
         head, power, tail = write_number(value, digits).partition("×")
         head = head.rstrip("0").rstrip(".") if "." in head else head
@@ -93,18 +97,31 @@ def basis_text(form: Form | None) -> str:
 _NAME = re.compile(r"\{(\w+)\}")
 
 
+@lru_cache(maxsize=256)
 def symbols_in(equation: str) -> str:
     """An equation with the symbols of its quantities."""
     return _NAME.sub(lambda match: meaning(match[1]).symbol, equation)
 
 
+@lru_cache(maxsize=256)
+def _pieces(equation: str) -> tuple[str, ...]:
+    """An equation cut at its quantities: text and names by turns."""
+    return tuple(_NAME.split(equation))
+
+
+def _names(equation: str) -> tuple[str, ...]:
+    """The quantities of an equation."""
+    return _pieces(equation)[1::2]
+
+
+def _number(q: Quantities, name: str) -> str:
+    """A quantity of one cell with its unit."""
+    return with_unit(float(getattr(q, name)), meaning(name).unit)
+
+
 def numbers_in(equation: str, q: Quantities) -> str:
     """An equation with the numbers of one cell and their units."""
-
-    def number(match: re.Match[str]) -> str:
-        return with_unit(float(getattr(q, match[1])), meaning(match[1]).unit)
-
-    return _NAME.sub(number, equation)
+    return "".join(_number(q, piece) if k % 2 else piece for k, piece in enumerate(_pieces(equation)))
 
 
 @dataclass(frozen=True)
@@ -187,7 +204,7 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
     unit = entry.line.factor.unit
     delta, loss = with_unit(float(entry.delta), unit), with_unit(float(entry.loss), "mW cm⁻²")
     steps = [f"Δ = {symbols_in(form.equation)}", f"= {numbers_in(form.equation, q)} = {delta}"]
-    names = _NAME.findall(form.equation)
+    names = [*_names(form.equation)]
     weight = entry.line.factor.weight_equation
     if weight:
         steps += [f"loss = {symbols_in(weight)} · Δ", f"= {numbers_in(weight, q)} · Δ = {loss}"]
@@ -196,16 +213,16 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
             steps += [f"{symbols_in(weight)} = {symbols_in(inner)}", f"= {numbers_in(inner, q)}"]
             if "Λ" in inner:
                 steps.append("with Λ(a, b) = (a − b) / ln(a / b), the logarithmic mean")
-            names += _NAME.findall(inner)
+            names += _names(inner)
         else:
-            names += _NAME.findall(weight)
+            names += _names(weight)
     if form.implied is not None:
         value = with_unit(float(form.implied.value(q)), "")
         steps += [
             f"{form.implied.symbol} = {symbols_in(form.implied.equation)}",
             f"= {numbers_in(form.implied.equation, q)} = {value}",
         ]
-        names += _NAME.findall(form.implied.equation)
+        names += _names(form.implied.equation)
     return Explanation(
         entry.line.title,
         f"{loss_text(float(entry.loss), float(q.incident))} of the incident power",
@@ -228,14 +245,11 @@ def _total(title: str, ledger: Ledger, equation: str, name: str, basis: str, sou
         f"= {' × '.join(percent(value, 1) for value in factors.values())} = {percent(power / float(q.incident))}",
     )
     amount = f"{percent(power / float(q.incident))} of the incident power"
-    return Explanation(title, amount, steps, _given(_NAME.findall(equation), q), basis, source)
+    return Explanation(title, amount, steps, _given(_names(equation), q), basis, source)
 
 
-def _given(names: list[str], q: Quantities) -> tuple[Given, ...]:
-    once = dict.fromkeys(names)
-    return tuple(
-        Given(meaning(n).symbol, with_unit(float(getattr(q, n)), meaning(n).unit), meaning(n).title) for n in once
-    )
+def _given(names: Iterable[str], q: Quantities) -> tuple[Given, ...]:
+    return tuple(Given(meaning(n).symbol, _number(q, n), meaning(n).title) for n in dict.fromkeys(names))
 
 
 def inputs_text(entry: CellEntry) -> str:

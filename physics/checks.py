@@ -134,5 +134,7 @@ CHECKS: tuple[Check, ...] = (
 def failed(ledger: Ledger) -> list[tuple[Check, Mask]]:
     """Checks that at least one cell fails, with the mask of the cells concerned (shape of the cells)."""
     with np.errstate(invalid="ignore"):
-        hits = ((check, check.hit(ledger)) for check in CHECKS)
+        hits = [(check, check.hit(ledger)) for check in CHECKS]
+        if not ledger.cell.shape:
+            return [(check, mask) for check, mask in hits if mask]
         return [(check, mask) for check, mask in hits if mask.any()]

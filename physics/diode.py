@@ -13,6 +13,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -20,7 +21,7 @@ from numpy.typing import ArrayLike
 from physics.units import Array, Mask, aligned, thermal_voltage
 
 _OHM_CM2 = 1e-3  # mA cm⁻² through Ω cm² gives mV
-_NEWTON_STEPS = 80
+_QUICK_STEPS, _NEWTON_STEPS = 8, 80
 # Newton's step is quadratic: once it moves less than this share of Voc, what is left is below 1e-9 of Voc, and the
 # power, stationary there, is good to the square of that. A tighter bound would chase rounding.
 _TOLERANCE = 1e-6
@@ -84,6 +85,14 @@ def ideal_fill_factor(v: ArrayLike) -> Array:
     v = np.where((v > 0) & (v < np.inf), v, np.nan)
     w = wright_omega(1.0 + v) - 1.0
     return w * w / ((1.0 + w) * v * -np.expm1(-v))
+
+
+@lru_cache(maxsize=16)
+def _crowded(points: int) -> Array:
+    """Numbers from 0 to 1 that lie closer together towards 1."""
+    places = 1.0 - (1.0 - np.linspace(0.0, 1.0, points)) ** 2
+    places.flags.writeable = False
+    return places
 
 
 @dataclass(frozen=True, eq=False)
@@ -161,8 +170,7 @@ class Diode:
 
     def _curve(self, points: int) -> tuple[Array, Array]:
         start = (self.jsc * self.rs * _OHM_CM2)[..., None]
-        t = np.linspace(0.0, 1.0, points)
-        u = start + (self.voc[..., None] - start) * (1.0 - (1.0 - t) ** 2)
+        u = start + (self.voc[..., None] - start) * _crowded(points)
         amplitude = np.where(self.possible, self._amplitude(), np.nan)[..., None]
         lift = self.voc[..., None] - u
         j = amplitude * -np.expm1(-lift / self.scale[..., None]) + lift / (self.rsh * _OHM_CM2)[..., None]
@@ -179,47 +187,92 @@ class Diode:
         Notes
         -----
         d(J·V)/du = 0 reads J′ (u − 2 Rs J) + J = 0. It has one root between V = 0 and Voc, since J·V is concave in
-        V; Newton's step is taken where it stays inside the bracket, halving elsewhere.
+        V. Newton's steps find it nearly always; where they leave that range, they are taken again with a bracket.
         """
         with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
             return self._maximum_power()
 
     def _maximum_power(self) -> tuple[Array, Array]:
-        rs = self.rs * _OHM_CM2
-        conductance = 1.0 / (self.rsh * _OHM_CM2)
-        amplitude = np.where(self.possible, self._amplitude(), np.nan)
-        low, high = self.jsc * rs, self.voc
-        reduced = self.voc / self.scale
-        u = self.scale * (reduced - np.log1p(reduced))  # near the point of a diode without resistances
-        u = np.where((u > low) & (u < high), u, 0.5 * (low + high))
-        # J′ (u − 2 Rs J) + J = 0 solved for the exponential, once: a start on the right side of the knee.
-        j = amplitude * -np.expm1((u - self.voc) / self.scale) + (self.voc - u) * conductance
-        knee = self.voc + self.scale * np.log((j / (u - 2.0 * rs * j) - conductance) * self.scale / amplitude)
-        u = np.where((knee > low) & (knee < high), knee, u)
-        inverse, top, near_enough = 1.0 / self.scale, amplitude + self.voc * conductance, _TOLERANCE * self.voc
-        for _ in range(_NEWTON_STEPS):
-            grown = amplitude * np.exp((u - self.voc) * inverse)
-            j = top - grown - u * conductance
-            bent = grown * inverse
-            fall = bent + conductance  # −J′
-            reach = u - 2.0 * rs * j
-            gain = j - fall * reach
-            newton = u + gain / (bent * inverse * reach + 2.0 * fall * (1.0 + rs * fall))
-            rising = gain > 0
-            low, high = np.where(rising, u, low), np.where(rising, high, u)
-            outside = (newton < low) | (newton > high)
-            if outside.any():
-                newton = np.where(outside, 0.5 * (low + high), newton)
-            moved, u = np.abs(newton - u), newton
-            if not (moved > near_enough).any():
+        knee = _Knee.of(self)
+        u = knee.start()
+        for _ in range(_QUICK_STEPS):
+            step = knee.newton(u)
+            u = u + step
+            if not (np.abs(step) > knee.near_enough).any():
                 break
-        j = amplitude * -np.expm1((u - self.voc) * inverse) + (self.voc - u) * conductance
-        return u - rs * j, j
+        good = (u >= knee.low) & (u <= knee.voc) & (np.abs(step) <= knee.near_enough)
+        if not (good | np.isnan(knee.amplitude)).all():
+            u = np.where(good, u, knee.bracketed())[()]
+        j = knee.current(u)
+        return u - knee.rs * j, j
 
     def fill_factor(self) -> Array:
         """Fill factor of the curve (maximum power over Voc·Jsc); NaN where no such curve exists."""
         voltage, current = self.maximum_power()
         return voltage * current / (self.voc * self.jsc)
+
+
+@dataclass(frozen=True, eq=False)
+class _Knee:
+    """The search for the maximum power point of diodes, in the junction voltage u [V] and kΩ cm²."""
+
+    voc: Array
+    jsc: Array
+    scale: Array
+    rs: Array
+    conductance: Array
+    amplitude: Array
+    low: Array
+    near_enough: Array
+
+    @classmethod
+    def of(cls, diode: Diode) -> _Knee:
+        rs = diode.rs * _OHM_CM2
+        amplitude = np.where(diode.possible, diode._amplitude(), np.nan)[()]
+        conductance = 1.0 / (diode.rsh * _OHM_CM2)
+        low, near_enough = diode.jsc * rs, _TOLERANCE * diode.voc
+        return cls(diode.voc, diode.jsc, diode.scale, rs, conductance, amplitude, low, near_enough)
+
+    def current(self, u: Array) -> Array:
+        return self.amplitude * -np.expm1((u - self.voc) / self.scale) + (self.voc - u) * self.conductance
+
+    def start(self) -> Array:
+        """A place near the point, between both ends."""
+        reduced = self.voc / self.scale
+        u = self.scale * (reduced - np.log1p(reduced))  # near the point of a diode without resistances
+        u = np.where((u > self.low) & (u < self.voc), u, 0.5 * (self.low + self.voc))[()]
+        # J′ (u − 2 Rs J) + J = 0 solved for the exponential, once: a start on the right side of the knee.
+        j = self.current(u)
+        bent = (j / (u - 2.0 * self.rs * j) - self.conductance) * self.scale / self.amplitude
+        knee = self.voc + self.scale * np.log(bent)
+        return np.where((knee > self.low) & (knee < self.voc), knee, u)[()]
+
+    def _climb(self, u: Array) -> tuple[Array, Array]:
+        """d(J·V)/du, and minus its derivative."""
+        grown = self.amplitude * np.exp((u - self.voc) / self.scale)
+        j = self.amplitude - grown + (self.voc - u) * self.conductance
+        bent = grown / self.scale
+        fall = bent + self.conductance  # −J′
+        reach = u - 2.0 * self.rs * j
+        return j - fall * reach, bent / self.scale * reach + 2.0 * fall * (1.0 + self.rs * fall)
+
+    def newton(self, u: Array) -> Array:
+        """Newton's step."""
+        gain, bend = self._climb(u)
+        return gain / bend
+
+    def bracketed(self) -> Array:
+        """Newton's steps where they stay inside a bracket that narrows, halving elsewhere."""
+        low, high, u = self.low, self.voc, self.start()
+        for _ in range(_NEWTON_STEPS):
+            gain, bend = self._climb(u)
+            low, high = np.where(gain > 0, u, low), np.where(gain > 0, high, u)
+            newton = u + gain / bend
+            newton = np.where((newton < low) | (newton > high), 0.5 * (low + high), newton)
+            moved, u = np.abs(newton - u), newton
+            if not (moved > self.near_enough).any():
+                break
+        return u
 
 
 def matching_ideality(
@@ -255,7 +308,12 @@ def matching_ideality(
     The fill factor falls as n rises, so the bracket is narrowed on a grid of 64 idealities a round, all cells at
     once; the last bracket, at most 0.27 % wide, is crossed by a straight line.
     """
-    ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in aligned(ff, voc, jsc, temperature, rs, rsh))
+    known = aligned(ff, voc, jsc, temperature, rs, rsh)
+    if np.isfinite(near):
+        found = _by_newton(near, *known)
+        if not np.isnan(found).any():
+            return found
+    ff_, voc_, jsc_, temperature_, rs_, rsh_ = (a[..., None] for a in known)
     plain = not ((rs_ > 0).any() or np.isfinite(rsh_).any())
 
     def fill_factors(ideality: Array) -> Array:
@@ -263,20 +321,49 @@ def matching_ideality(
             return ideal_fill_factor(voc_ / (ideality * thermal_voltage(temperature_)))
         return Diode.through(voc_, jsc_, temperature_, ideality, rs_, rsh_).fill_factor()
 
-    if 0.06 < near < 1900.0:  # so that what is looked at lies within the bounds
-        low = np.full(ff_.shape, np.log(near) - _NEARBY)
-        between, _, found = _narrowed(fill_factors, ff_, low, low + 2.0 * _NEARBY)
-        if found.all():
-            return between[..., 0]
-    low = np.full(ff_.shape, np.log(0.05))
-    _, low, found = _narrowed(fill_factors, ff_, low, np.full(ff_.shape, np.log(2000.0)))
-    width = (np.log(2000.0) - np.log(0.05)) / (_GRID.size - 1)
+    low = np.full(ff_.shape, np.log(_LEAST_IDEALITY))
+    _, low, inside = _narrowed(fill_factors, ff_, low, np.full(ff_.shape, np.log(_GREATEST_IDEALITY)))
+    width = (np.log(_GREATEST_IDEALITY) - np.log(_LEAST_IDEALITY)) / (_GRID.size - 1)
     between, _, _ = _narrowed(fill_factors, ff_, low, low + width, within=True)
-    return np.where(found, between, np.nan)[..., 0]
+    return np.where(inside, between, np.nan)[..., 0]
 
 
+def _by_newton(near: float, ff: Array, voc: Array, jsc: Array, temperature: Array, rs: Array, rsh: Array) -> Array:
+    """Idealities that meet the fill factors, looked for from one near them; NaN where that does not lead there.
+
+    Each round moves u towards the maximum power point and n Vt towards the fill factor. At that point the power is
+    stationary in u, so that what is still wrong in u disturbs n Vt in second order only.
+    """
+    vt, rs, conductance = thermal_voltage(temperature), rs * _OHM_CM2, 1.0 / (rsh * _OHM_CM2)
+    below_voc = voc - jsc * rs
+    top, target = jsc + (jsc * rs - voc) * conductance, ff * voc * jsc
+    with np.errstate(invalid="ignore", over="ignore", divide="ignore"):
+        scale = near * vt
+        u = voc - scale * np.log1p(voc / scale)
+        for _ in range(_QUICK_STEPS):
+            at_jsc = np.exp(-below_voc / scale)
+            amplitude = top / (1.0 - at_jsc)
+            lift = voc - u
+            exponential = np.exp(-lift / scale)
+            grown = amplitude * exponential / scale
+            j = amplitude * (1.0 - exponential) + lift * conductance
+            fall, reach = grown + conductance, u - 2.0 * rs * j
+            gain = j - fall * reach
+            step = gain / (grown / scale * reach + 2.0 * fall * (1.0 + rs * fall))
+            sooner = amplitude * (1.0 - exponential) * at_jsc / (1.0 - at_jsc) * below_voc / scale**2
+            per_scale = reach * (sooner - grown * lift / scale)  # of the power
+            change = (target - j * (u - rs * j) - 0.5 * gain * step) / per_scale
+            u, scale = u + step, scale + change
+            if not (np.abs(change) > 1e-8 * scale).any():
+                break
+        ideality = scale / vt
+        good = (np.abs(change) <= 1e-8 * scale) & (u > jsc * rs) & (u < voc) & (top > 0) & (below_voc > 0)
+        good = good & (ideality > _LEAST_IDEALITY) & (ideality < _GREATEST_IDEALITY)
+        return np.where(good, ideality, np.nan)
+
+
+_LEAST_IDEALITY, _GREATEST_IDEALITY = 0.05, 2000.0
 _GRID = np.linspace(0.0, 1.0, 64)
-_NEARBY = 0.05  # half the width [ln n] of the bracket around a hint; its pieces are 0.16 % wide
 
 
 def _narrowed(

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
+from weakref import WeakKeyDictionary
 
 import numpy as np
 
@@ -124,32 +125,35 @@ class Ledger:
         }
 
 
-#: The index of a form for a single cell: arrays made once, because a ledger of one cell is worked out at each tick.
+#: The index of a form for a single cell, and no loss: made once, because a ledger of one cell is made at each tick.
 _ONE_CELL = {index: np.array(index, dtype=np.intp) for index in range(-1, 8)}
-for _index in _ONE_CELL.values():
-    _index.flags.writeable = False
+_NOTHING = np.zeros(())
+for _constant in (*_ONE_CELL.values(), _NOTHING):
+    _constant.flags.writeable = False
 
 
-def _everywhere(shape: tuple[int, ...], index: int) -> Indices:
-    """The same index for all cells."""
-    return np.full(shape, index, dtype=np.intp) if shape else _ONE_CELL[index]
+_TO_LIMIT = tuple(line for line in LINES if line.section is Section.SUN_TO_LIMIT)
+_TO_CELL = tuple(line for line in LINES if line.section is Section.LIMIT_TO_CELL)
+#: Lines down to the limit of a single cell: they stay while the cell's own figures change.
+_KNOWN: WeakKeyDictionary[Limit, tuple[Entry, ...]] = WeakKeyDictionary()
 
 
 def _work_out(line: Line, q: Quantities) -> Entry:
     """One line for all cells: the first form that applies to a cell gives its Δ."""
     shape = q.incident.shape
+    if not shape:
+        return _work_out_one(line, q)
     used: list[tuple[int, Mask]] = []
     for index, option in enumerate(line.forms):
         mask = None if option.applies is None else option.applies(q)
         if mask is None or mask.all():
             if not used:  # by far the most frequent case, and the quickest
-                delta = option.delta(q)
-                return Entry(line, delta, line.factor.weight(q) * delta, _everywhere(shape, index))
+                return _with_form(line, q, index, np.full(shape, index, dtype=np.intp))
             used.append((index, np.ones(shape, dtype=bool)))
             break
         if mask.any():
             used.append((index, mask))
-    delta, form = np.zeros(shape), _everywhere(shape, -1)
+    delta, form = np.zeros(shape), np.full(shape, -1, dtype=np.intp)
     if not used:
         return Entry(line, delta, delta, form)
     for index, mask in reversed(used):  # an earlier form overrules a later one
@@ -158,11 +162,30 @@ def _work_out(line: Line, q: Quantities) -> Entry:
     return Entry(line, delta, line.factor.weight(q) * delta, form)
 
 
+def _with_form(line: Line, q: Quantities, index: int, form: Indices) -> Entry:
+    """A line whose Δ is found in the same way for all cells."""
+    delta = line.forms[index].delta(q)
+    return Entry(line, delta, line.factor.weight(q) * delta, form)
+
+
+def _work_out_one(line: Line, q: Quantities) -> Entry:
+    """One line for a single cell, without the masks: that is what a slider waits for."""
+    for index, option in enumerate(line.forms):
+        if option.applies is None or option.applies(q):
+            return _with_form(line, q, index, _ONE_CELL[index])
+    return Entry(line, _NOTHING, _NOTHING, _ONE_CELL[-1])
+
+
 def ledger_against(cell: Cell, limit: Limit, attribution: Attribution = "log-mean") -> Ledger:
     """Ledger of cells against limits of the same shape that are at hand already; see `ledger_of`."""
     with np.errstate(invalid="ignore", divide="ignore"):
         q = quantities_of(cell, limit, attribution)
-        return Ledger(cell, limit, q, tuple(_work_out(line, q) for line in LINES), attribution)
+        known = _KNOWN.get(limit) if not q.incident.shape else None
+        down_to_limit = known or tuple(_work_out(line, q) for line in _TO_LIMIT)
+        if known is None and not q.incident.shape:
+            _KNOWN[limit] = down_to_limit
+        entries = (*down_to_limit, *(_work_out(line, q) for line in _TO_CELL))
+        return Ledger(cell, limit, q, entries, attribution)
 
 
 def ledger_of(

@@ -169,13 +169,8 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
     unity, plain = ideal_fill_factor(cell.voc / np.array([vt, ideality * vt]))
 
     shunt_first = ~np.isnan(cell.pseudo_ff)
-    first, diode = _with_resistances(
-        cell,
-        ideality,
-        plain,
-        np.array([has_rs & ~shunt_first, has_rs]),
-        np.array([has_rsh & shunt_first, has_rsh]),
-    )
+    diode = _with_resistances(cell, ideality, plain, has_rs, has_rsh)
+    first = _with_resistances(cell, ideality, plain, has_rs & ~shunt_first, has_rsh & shunt_first)
     return {
         "ff_voltage": unity,
         "ff_ideality": plain,
@@ -188,13 +183,10 @@ def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:
 
 
 def _with_resistances(cell: Cell, ideality: Array, plain: Array, rs_known: Mask, rsh_known: Mask) -> Array:
-    """Fill factors with Rs and Rsh where the masks say so, and `plain` itself where neither is known.
-
-    The masks have one axis more than the cells, so that all states share one search for the maximum power.
-    """
+    """Fill factors with Rs and Rsh where the masks say so, and `plain` itself where neither is known."""
     known = rs_known | rsh_known
     if not known.any():
-        return np.broadcast_to(plain, known.shape)
+        return plain
     rs, rsh = np.where(rs_known, cell.rs, 0.0), np.where(rsh_known, cell.rsh, np.inf)
     diode = Diode.through(cell.voc, cell.jsc, cell.temperature, ideality, rs, rsh)
     return np.where(known, diode.fill_factor(), plain)

@@ -35,5 +35,5 @@ def aligned(*values: ArrayLike) -> tuple[Array, ...]:
     arrays = tuple(np.asarray(value, dtype=float) for value in values)
     shape = arrays[0].shape
     if all(array.shape == shape for array in arrays):  # broadcasting costs ten times as much as this look
-        return arrays
+        return arrays if shape else tuple(array[()] for array in arrays)  # numpy counts faster with its scalars
     return tuple(np.broadcast_arrays(*arrays))

@@ -125,15 +125,17 @@ def _marks_explained(ledger: Ledger) -> tuple[str, ...]:
 
 def _segments(ledger: Ledger, limit: float) -> tuple[Segment, ...]:
     incident = float(ledger.limit.incident)
-    pieces = []
-    for entry in entries_of(ledger, Section.SUN_TO_LIMIT):
-        share = float(entry.loss) / incident
-        line = entry.line
-        pieces.append(Segment(line.key, line.title, line.short, 100 * share, percent(share, 1), _ROLES[line.family]))
+    pieces = [_segment(entry, incident) for entry in entries_of(ledger, Section.SUN_TO_LIMIT)]
     pieces.append(
         Segment("detailed_balance", "Detailed-balance limit", "limit", 100 * limit, percent(limit, 1), "limit")
     )
     return tuple(pieces)
+
+
+@lru_cache(maxsize=64)  # the lines down to the limit stay while the cell's figures change
+def _segment(entry: Entry, incident: float) -> Segment:
+    share, line = float(entry.loss) / incident, entry.line
+    return Segment(line.key, line.title, line.short, 100 * share, percent(share, 1), _ROLES[line.family])
 
 
 def _steps(name: str, ledger: Ledger) -> tuple[Step, ...]:

@@ -239,8 +239,10 @@ class ExplainPanel(QAbstractScrollArea):
         shift = self.verticalScrollBar().value()
         for before, now in zip(previous, self._placed, strict=True):
             if before != now:
-                for x, y, block in (before, now):
-                    view.update(block.area(x, y - shift))
+                x, y, block = now
+                area = block.area(x, y - shift)
+                x, y, block = before
+                view.update(area.united(block.area(x, y - shift)))
 
     def copy(self) -> None:
         """Put the text on the clipboard."""

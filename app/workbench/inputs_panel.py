@@ -5,6 +5,7 @@ from __future__ import annotations
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QScrollArea, QVBoxLayout, QWidget
 
+from app.session.appraisal import Appraisal
 from app.session.commands import Describe, SetValue
 from app.session.fields import FIELD_BY_KEY
 from app.session.light import light_named
@@ -41,6 +42,7 @@ class InputsPanel(QScrollArea):
         self.spectrum = QComboBox()
         self.spectrum_message = QLabel()
         self.fields: dict[str, NumberField] = {}
+        self._troubled = False
         column = QVBoxLayout(self._page)
         column.setContentsMargins(10, 4, 10, 8)
         column.setSpacing(3)
@@ -135,7 +137,13 @@ class InputsPanel(QScrollArea):
         self._show_spectrum(entry.spectrum)
         for key, field in self.fields.items():
             field.show_value(entry.values[key])
-            field.show_problem(appraisal.about(key), gently=outcome.picture is None)
+        troubled, self._troubled = self._troubled, bool(appraisal.problems)
+        if troubled or self._troubled:
+            self._show_problems(appraisal, gently=outcome.picture is None)
+
+    def _show_problems(self, appraisal: Appraisal, gently: bool) -> None:
+        for key, field in self.fields.items():
+            field.show_problem(appraisal.about(key), gently)
         problem = appraisal.about("spectrum")
         self.spectrum_message.setVisible(problem is not None)
         if problem is not None:

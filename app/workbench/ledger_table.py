@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 from PySide6.QtCore import QModelIndex, Qt, Signal
 from PySide6.QtGui import QResizeEvent, QStandardItem, QStandardItemModel
 from PySide6.QtWidgets import QAbstractItemView, QHeaderView, QTableView, QWidget
@@ -30,7 +32,7 @@ class LedgerModel(QStandardItemModel):
     def show_rows(self, rows: tuple[LedgerRow, ...]) -> None:
         """Show these rows."""
         previous, self.rows = self.rows, rows
-        shown, self._texts = self._texts, [self._row_texts(row) for row in rows]
+        shown, self._texts = self._texts, [_row_texts(row, self._narrow) for row in rows]
         if [r.key for r in rows] != [r.key for r in previous]:
             self.setRowCount(0)
             for row, texts in zip(rows, self._texts, strict=True):
@@ -53,10 +55,12 @@ class LedgerModel(QStandardItemModel):
             self._narrow = narrow
             self.show_rows(self.rows)
 
-    def _row_texts(self, row: LedgerRow) -> tuple[str, ...]:
-        """Texts of the columns, and the tooltip."""
-        line = row.short[:1].upper() + row.short[1:] if self._narrow else row.line
-        return line, row.amount, row.change, row.basis.partition(":")[0], f"{row.line}\n{row.basis}"
+
+@lru_cache(maxsize=128)
+def _row_texts(row: LedgerRow, narrow: bool) -> tuple[str, ...]:
+    """Texts of the columns, and the tooltip."""
+    line = row.short[:1].upper() + row.short[1:] if narrow else row.line
+    return line, row.amount, row.change, row.basis.partition(":")[0], f"{row.line}\n{row.basis}"
 
 
 def _item(row: LedgerRow, column: int, texts: tuple[str, ...]) -> QStandardItem:

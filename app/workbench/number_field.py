@@ -98,7 +98,8 @@ class NumberField(QWidget):
         super().__init__(parent)
         self.field = field
         self._shown: Value = None
-        self._touched = True
+        self._touched = True  # what is shown may not be what the session holds
+        self._typed_in = False  # the text is the user's
         self._problem: tuple[Problem | None, bool] = (None, False)
         self.label = QLabel(field.symbol)
         self.entry = Entry()
@@ -149,8 +150,9 @@ class NumberField(QWidget):
         """Show a value. What the user is typing stays as typed as long as it means that value."""
         if not self._touched and (value is self._shown or value == self._shown):
             return
+        typed, self._typed_in = self._typed_in, False
         self._shown, self._touched = value, False
-        if self._read() != value:
+        if not typed or self._read() != value:
             self.entry.setText(self._text(value))
             self.entry.setCursorPosition(0)
         if not self.slider.isSliderDown():
@@ -201,12 +203,12 @@ class NumberField(QWidget):
             return Unread(text, str(fault))
 
     def _typed(self) -> None:
-        self._touched = True
+        self._touched = self._typed_in = True
         self.asked.emit(self._read())
 
     def _left(self) -> None:
         """The visit is over: an empty field with a default takes it, and the number is written out plainly."""
-        self._touched = True
+        self._touched = self._typed_in = True
         value = self._read()
         if value is None and self.field.default is not None:
             self.asked.emit(self.field.default)
