@@ -13,8 +13,9 @@ from app.session.curves import edge_for
 from app.session.light import light_named
 from app.session.session import Session
 from app.session.state import CellEntry, Choices
-from physics.diode import Diode, matching_ideality
+from physics.diode import Diode
 from physics.edge import Edge
+from physics.ideality import matching_ideality
 from physics.ledger import Ledger
 from physics.limit import Faces, Limit, detailed_balance_limit
 from physics.units import Array

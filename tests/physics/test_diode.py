@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from numpy.typing import NDArray
 from scipy.special import lambertw, wrightomega
 
-from physics.diode import Diode, ideal_fill_factor, matching_ideality, wright_omega
+from physics.diode import Diode, ideal_fill_factor, wright_omega
 from physics.units import thermal_voltage
 
 from . import brute
@@ -234,53 +234,3 @@ def test_bounds_of_the_resistances() -> None:
     np.testing.assert_array_equal(np.isnan(ff), ~diode.possible)
     # Rs this near to Voc/Jsc leaves a straight line from (0, Jsc) to (Voc, 0), and so does the shunt.
     np.testing.assert_allclose(ff[[0, 2, 4]], 0.25, atol=0.005)
-
-
-@settings(deadline=None, max_examples=150)
-@given(
-    st.floats(0.06, 1500.0), st.floats(0.1, 3.0), st.floats(0.01, 100.0), st.floats(200.0, 400.0),
-    st.one_of(st.just(0.0), st.floats(0.0, 0.5)), st.one_of(st.just(math.inf), st.floats(3.0, 1e5)),
-)
-def test_matching_ideality_is_the_inverse(
-    n: float, voc: float, jsc: float, temperature: float, r: float, r_sh: float
-) -> None:
-    ohm = 1e3 * voc / jsc
-    rs, rsh = r * ohm, r_sh * ohm
-    ff = float(Diode.through(voc, jsc, temperature, n, rs, rsh).fill_factor())
-    back = float(matching_ideality(ff, voc, jsc, temperature, rs, rsh))
-    assert back == pytest.approx(n, rel=1e-6)
-    again = float(Diode.through(voc, jsc, temperature, back, rs, rsh).fill_factor())
-    assert again == pytest.approx(ff, abs=2e-7)
-
-
-def test_matching_ideality_on_every_point_of_its_own_grid() -> None:
-    for count in (24, 64):
-        n = np.exp(np.linspace(np.log(0.05), np.log(2000.0), count))[:-1]
-        ff = ideal_fill_factor(1.0 / (n * VT))
-        np.testing.assert_allclose(matching_ideality(ff, 1.0, 25.0, T), n, rtol=1e-6)
-
-
-@pytest.mark.parametrize("factor", [0.5, 0.951, 0.99, 1.0, 1.0 + 1e-9, 1.049, 1.06, 20.0])
-def test_a_hint_changes_nothing(factor: float) -> None:
-    for n in (0.0501, 0.08, 0.9, 1.7, 40.0, 1990.0):
-        ff = float(Diode.through(1.0, 25.0, T, n, 0.3, 2e3).fill_factor())
-        hinted = float(matching_ideality(ff, 1.0, 25.0, T, 0.3, 2e3, n * factor))
-        assert hinted == pytest.approx(n, rel=1e-6)
-    for n in (0.0495, 2020.0):  # outside what is served, with and without a hint nearby
-        ff = float(ideal_fill_factor(1.0 / (n * VT)))
-        assert np.isnan(matching_ideality(ff, 1.0, 25.0, T))
-        assert np.isnan(matching_ideality(ff, 1.0, 25.0, T, near=n * factor))
-    two = matching_ideality([0.2, 0.8], 1.0, 25.0, T, near=factor)
-    np.testing.assert_allclose(two, matching_ideality([0.2, 0.8], 1.0, 25.0, T), rtol=2e-6)
-
-
-def test_matching_ideality_where_there_is_none() -> None:
-    assert np.isnan(matching_ideality([0.25, 0.2, 0.0, -1.0, 1.0, 1.2, np.nan], 1.0, 25.0, T)).all()
-    assert np.isnan(matching_ideality(0.8, [0.0, -1.0, np.nan], 25.0, T)).all()
-    # Rs alone brings the fill factor below 0.7, and 0.9 needs n below 0.05 at 50 mV.
-    assert np.isnan(matching_ideality(0.7, 1.0, 25.0, T, 15.0))
-    assert np.isnan(matching_ideality(0.97, 0.05, 25.0, T))
-    mixed = matching_ideality([0.2, 0.8], 1.0, 25.0, T)
-    assert np.isnan(mixed[0])
-    assert mixed[1] == pytest.approx(float(matching_ideality(0.8, 1.0, 25.0, T)), rel=1e-12)
-    assert matching_ideality(np.full((2, 1), 0.8), np.ones(3), 25.0, T).shape == (2, 3)

@@ -25,7 +25,8 @@ for name in ("scipy", "pandas", "PySide6", "app"):
 
 from physics.cell import Cell
 from physics.checks import failed
-from physics.diode import Diode, matching_ideality
+from physics.diode import Diode
+from physics.ideality import matching_ideality
 from physics.ledger import ledger_of
 from physics.spectrum import reference_spectrum
 
