@@ -14,7 +14,7 @@ from app.session.light import light_named
 from app.session.state import CellEntry, Choices
 from physics.ledger import Entry, Ledger
 from physics.lines import Basis, Form
-from physics.quantities import Quantities, meaning
+from physics.quantities import Quantities
 
 MINUS = "−"
 THIN = "\u2009"  # between a number and its unit
@@ -97,10 +97,9 @@ def basis_text(form: Form | None) -> str:
 _NAME = re.compile(r"\{(\w+)\}")
 
 
-@lru_cache(maxsize=256)
-def symbols_in(equation: str) -> str:
+def symbols_in(equation: str, q: Quantities) -> str:
     """An equation with the symbols of its quantities."""
-    return _NAME.sub(lambda match: meaning(match[1]).symbol, equation)
+    return "".join(q.meaning(piece).symbol if k % 2 else piece for k, piece in enumerate(_pieces(equation)))
 
 
 @lru_cache(maxsize=256)
@@ -116,7 +115,7 @@ def _names(equation: str) -> tuple[str, ...]:
 
 def _number(q: Quantities, name: str) -> str:
     """A quantity of one cell with its unit."""
-    return with_unit(float(getattr(q, name)), meaning(name).unit)
+    return with_unit(float(q.number(name)), q.meaning(name).unit)
 
 
 def numbers_in(equation: str, q: Quantities) -> str:
@@ -193,7 +192,7 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
         )
     if key == "sunlight":
         title = light_named(spectrum).title if spectrum else "the light"
-        given = (Given(meaning("incident").symbol, with_unit(float(q.incident), "mW cm⁻²"), meaning("incident").title),)
+        given = _given(("incident",), q)
         return Explanation("Sunlight", f"{title}, taken as 100 %", (), given, "", "the irradiance of the measurement")
     if key == "cell":
         return _total("The cell", ledger, "{jsc} · {voc} · {ff}", "power", Basis.MEASURED.value, "measured figures")
@@ -203,23 +202,23 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
         return Explanation(entry.line.title, "not in this ledger", (), (), "", entry.line.source)
     unit = entry.line.factor.unit
     delta, loss = with_unit(float(entry.delta), unit), with_unit(float(entry.loss), "mW cm⁻²")
-    steps = [f"Δ = {symbols_in(form.equation)}", f"= {numbers_in(form.equation, q)} = {delta}"]
+    steps = [f"Δ = {symbols_in(form.equation, q)}", f"= {numbers_in(form.equation, q)} = {delta}"]
     names = [*_names(form.equation)]
     weight = entry.line.factor.weight_equation
     if weight:
-        steps += [f"loss = {symbols_in(weight)} · Δ", f"= {numbers_in(weight, q)} · Δ = {loss}"]
+        steps += [f"loss = {symbols_in(weight, q)} · Δ", f"= {numbers_in(weight, q)} · Δ = {loss}"]
         inner = _WEIGHTS.get((ledger.attribution, weight.strip("{}")))
         if inner:
-            steps += [f"{symbols_in(weight)} = {symbols_in(inner)}", f"= {numbers_in(inner, q)}"]
+            steps += [f"{symbols_in(weight, q)} = {symbols_in(inner, q)}", f"= {numbers_in(inner, q)}"]
             if "Λ" in inner:
                 steps.append("with Λ(a, b) = (a − b) / ln(a / b), the logarithmic mean")
             names += _names(inner)
         else:
             names += _names(weight)
     if form.implied is not None:
-        value = with_unit(float(form.implied.value(q)), "")
+        value = with_unit(float(form.implied.value(q)), form.implied.unit)
         steps += [
-            f"{form.implied.symbol} = {symbols_in(form.implied.equation)}",
+            f"{form.implied.symbol} = {symbols_in(form.implied.equation, q)}",
             f"= {numbers_in(form.implied.equation, q)} = {value}",
         ]
         names += _names(form.implied.equation)
@@ -239,7 +238,7 @@ def _total(title: str, ledger: Ledger, equation: str, name: str, basis: str, sou
     which = 0 if name == "power_limit" else 1
     factors = {title: float(pair[which]) for title, pair in ledger.factors().items()}
     steps = (
-        f"{meaning(name).symbol} = {symbols_in(equation)}",
+        f"{q.meaning(name).symbol} = {symbols_in(equation, q)}",
         f"= {numbers_in(equation, q)} = {with_unit(power, 'mW cm⁻²')}",
         f"Efficiency = {' × '.join(factors)}",
         f"= {' × '.join(percent(value, 1) for value in factors.values())} = {percent(power / float(q.incident))}",
@@ -249,7 +248,7 @@ def _total(title: str, ledger: Ledger, equation: str, name: str, basis: str, sou
 
 
 def _given(names: Iterable[str], q: Quantities) -> tuple[Given, ...]:
-    return tuple(Given(meaning(n).symbol, _number(q, n), meaning(n).title) for n in dict.fromkeys(names))
+    return tuple(Given(q.meaning(n).symbol, _number(q, n), q.meaning(n).title) for n in dict.fromkeys(names))
 
 
 def inputs_text(entry: CellEntry) -> str:

@@ -13,7 +13,7 @@ from enum import Enum
 import numpy as np
 
 from physics.ledger import Ledger
-from physics.units import Mask
+from physics.units import Array, Mask
 
 # Our own choice: 30 mV is a factor of three in the ERE at 25 °C, more than luminescence is usually uncertain by.
 _VOLTAGE_DISAGREEMENT = 0.03  # [V]
@@ -38,7 +38,7 @@ class Check:
     key : str
         Name of the check.
     field : str
-        Field of `physics.cell.Cell` beside which it is told.
+        Field of `physics.cell.Cell` beside which it is told, or "stacks".
     severity : Severity
     hit : callable
         Ledger -> mask of the cells that fail.
@@ -57,7 +57,33 @@ def _not_finite(ledger: Ledger) -> Mask:
     cell = ledger.cell
     given = np.isfinite(cell.gap * cell.voc * cell.jsc * cell.ff * cell.temperature)
     diode = ledger.diode
-    return given & diode.drop_below_voc & diode.shunt_above_line & ~np.isfinite(ledger.closure)
+    told = diode.drop_below_voc & diode.shunt_above_line & ~_contradict(ledger)
+    return given & told & ~np.isfinite(ledger.closure)
+
+
+def _of_stacks(ledger: Ledger, name: str) -> Array:
+    """A number of the partial stacks, NaN where the cells have none."""
+    return ledger.quantities.number(name) if name in ledger.quantities.more else np.full(ledger.cell.shape, np.nan)[()]
+
+
+def _contradict(ledger: Ledger) -> Mask:
+    if not ledger.quantities.more:
+        return np.zeros(ledger.cell.shape, dtype=bool)[()]
+    return ~np.isfinite(ledger.quantities.number("yield_stack") * ledger.quantities.number("contacts"))
+
+
+def _above_radiative(ledger: Ledger) -> Mask:
+    more = ledger.quantities.more
+    hit = np.zeros(ledger.cell.shape, dtype=bool)[()]
+    for name in more:
+        if name.startswith("yield_"):
+            hit = hit | (more[name][1] > _ROUNDING)
+    return hit
+
+
+def _stack_below_voc(ledger: Ledger) -> Mask:
+    above_voc = ledger.quantities.vt * np.log(_of_stacks(ledger, "yield_stack")) + _of_stacks(ledger, "nonradiative")
+    return above_voc < -_VOLTAGE_DISAGREEMENT
 
 
 CHECKS: tuple[Check, ...] = (
@@ -127,6 +153,21 @@ CHECKS: tuple[Check, ...] = (
         "pseudo_ff_below_ff", "pseudo_ff", Severity.DOUBTFUL,
         lambda s: s.cell.pseudo_ff < s.cell.ff,
         "The pseudo fill factor is below FF, though it lacks the series resistance: check both.",
+    ),
+    Check(
+        "stacks_contradict", "stacks", Severity.IMPOSSIBLE, _contradict,
+        "With these yields the contacts would take away more recombination than the bare absorber has: measure the "
+        "finished cell's luminescence too, or leave out the contact that brightens the absorber.",
+    ),
+    Check(
+        "stack_above_radiative", "stacks", Severity.DOUBTFUL, _above_radiative,
+        "A stack's yield comes out above 1, as its implied voltage is above the {voc_rad:.4g} V of radiative "
+        "recombination alone: check that voltage, the gap, and the light level.",
+    ),
+    Check(
+        "stack_below_voc", "stacks", Severity.DOUBTFUL, _stack_below_voc,
+        "The finished stack's luminescence puts its splitting more than 30 mV below Voc, so the line down to Voc is "
+        "negative: check the yield's calibration, the light level, and the gap.",
     ),
 )
 

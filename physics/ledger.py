@@ -15,6 +15,8 @@ from physics.limit import Faces, Limit, detailed_balance_limit
 from physics.lines import LINES, Form, Line, Section
 from physics.quantities import Quantities, quantities_of
 from physics.spectrum import Illumination
+from physics.stack_lines import lines_with
+from physics.stacks import Stacks
 from physics.units import Array, Indices, Mask
 
 
@@ -63,7 +65,7 @@ class Ledger:
     quantities : Quantities
         Every number that the lines are made of.
     entries : tuple of Entry
-        In the order of `physics.lines.LINES`.
+        In the order of `physics.lines.LINES`, or of `physics.stack_lines.lines_with`.
     attribution : {"log-mean", "ladder"}
         Convention that was used.
     """
@@ -80,6 +82,10 @@ class Ledger:
             if entry.line.key == key:
                 return entry
         raise KeyError(key)
+
+    def __contains__(self, key: str) -> bool:
+        """Whether there is a line called `key`."""
+        return any(entry.line.key == key for entry in self.entries)
 
     @cached_property
     def diode(self) -> Diode:
@@ -133,7 +139,13 @@ for _constant in (*_ONE_CELL.values(), _NOTHING):
 
 
 _TO_LIMIT = tuple(line for line in LINES if line.section is Section.SUN_TO_LIMIT)
-_TO_CELL = tuple(line for line in LINES if line.section is Section.LIMIT_TO_CELL)
+
+
+def _to_cell(lines: tuple[Line, ...]) -> tuple[Line, ...]:
+    return tuple(line for line in lines if line.section is Section.LIMIT_TO_CELL)
+
+
+_TO_CELL = _to_cell(LINES)
 #: Lines down to the limit of a single cell: they stay while the cell's own figures change.
 _KNOWN: WeakKeyDictionary[Limit, tuple[Entry, ...]] = WeakKeyDictionary()
 
@@ -176,20 +188,27 @@ def _work_out_one(line: Line, q: Quantities) -> Entry:
     return Entry(line, _NOTHING, _NOTHING, _ONE_CELL[-1])
 
 
-def ledger_against(cell: Cell, limit: Limit, attribution: Attribution = "log-mean") -> Ledger:
+def ledger_against(
+    cell: Cell, limit: Limit, attribution: Attribution = "log-mean", stacks: Stacks | None = None
+) -> Ledger:
     """Ledger of cells against limits of the same shape that are at hand already; see `ledger_of`."""
+    to_cell = _TO_CELL if stacks is None else _to_cell(lines_with(stacks, attribution))
     with np.errstate(invalid="ignore", divide="ignore"):
-        q = quantities_of(cell, limit, attribution)
+        q = quantities_of(cell, limit, attribution, stacks)
         known = _KNOWN.get(limit) if not q.incident.shape else None
         down_to_limit = known or tuple(_work_out(line, q) for line in _TO_LIMIT)
         if known is None and not q.incident.shape:
             _KNOWN[limit] = down_to_limit
-        entries = (*down_to_limit, *(_work_out(line, q) for line in _TO_CELL))
+        entries = (*down_to_limit, *(_work_out(line, q) for line in to_cell))
         return Ledger(cell, limit, q, entries, attribution)
 
 
 def ledger_of(
-    cell: Cell, light: Illumination, attribution: Attribution = "log-mean", faces: Faces = 1
+    cell: Cell,
+    light: Illumination,
+    attribution: Attribution = "log-mean",
+    faces: Faces = 1,
+    stacks: Stacks | None = None,
 ) -> Ledger:
     """Ledger of measured cells against the detailed-balance limits of their gaps.
 
@@ -203,6 +222,8 @@ def ledger_of(
         How the difference is shared among current, voltage and fill factor (`physics.attribution`).
     faces : {1, 2}
         Faces from which the limit emits.
+    stacks : Stacks, optional
+        Luminescence of partial stacks, for all cells or none: it splits the line of non-radiative recombination.
 
     Returns
     -------
@@ -216,7 +237,7 @@ def ledger_of(
         For an unknown attribution.
     """
     limit = detailed_balance_limit(cell.gap, cell.temperature, light, cell.irradiance, faces)
-    return ledger_against(cell, limit, attribution)
+    return ledger_against(cell, limit, attribution, stacks)
 
 
 def entries_of(ledger: Ledger, section: Section) -> tuple[Entry, ...]:

@@ -78,16 +78,19 @@ class Implied:
     Parameters
     ----------
     symbol : str
-        What it is, a pure number.
+        What it is.
     equation : str
         How it follows; names in braces are fields of `Quantities`.
     value : callable
         Quantities -> the figure.
+    unit : str
+        Its unit, "" for a pure number.
     """
 
     symbol: str
     equation: str
     value: Callable[[Quantities], Array]
+    unit: str = ""
 
 
 @dataclass(frozen=True)

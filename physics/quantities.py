@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass, field, fields
 from typing import Any
 
@@ -11,6 +12,7 @@ from physics.attribution import Attribution, factor_weights
 from physics.cell import Cell
 from physics.diode import Diode, ideal_fill_factor
 from physics.limit import Limit
+from physics.stacks import Stacks, splitting_of
 from physics.units import Array, Mask, thermal_voltage
 
 
@@ -70,6 +72,18 @@ class Quantities:
     weight_voltage: Array = _quantity("w_V", "mA cm⁻²", "power per unit of voltage")
     weight_fill: Array = _quantity("w_FF", "mW cm⁻²", "power per unit of fill factor")
 
+    #: Numbers that only some cells have, such as the yields of partial stacks, by a name that no field above has.
+    more: Mapping[str, tuple[Meaning, Array]] = field(default_factory=dict)
+
+    def number(self, name: str) -> Array:
+        """The quantity called `name`; AttributeError where there is none."""
+        value: Array = self.more[name][1] if name in self.more else getattr(self, name)
+        return value
+
+    def meaning(self, name: str) -> Meaning:
+        """What the quantity called `name` is; KeyError where there is none."""
+        return self.more[name][0] if name in self.more else meaning(name)
+
     def knows(self, name: str) -> Mask:
         """Which cells have a number for the quantity called `name`; worked out once, for all lines that ask."""
         masks: dict[str, Mask] = self.__dict__.setdefault("_known", {})
@@ -90,10 +104,12 @@ def meaning(name: str) -> Meaning:
     return _MEANINGS[name]
 
 
-_MEANINGS: dict[str, Meaning] = {f.name: f.metadata["meaning"] for f in fields(Quantities)}
+_MEANINGS: dict[str, Meaning] = {f.name: f.metadata["meaning"] for f in fields(Quantities) if "meaning" in f.metadata}
 
 
-def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantities:
+def quantities_of(
+    cell: Cell, limit: Limit, attribution: Attribution, stacks: Stacks | None = None
+) -> Quantities:
     """All quantities of a ledger.
 
     Parameters
@@ -104,6 +120,8 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
         Their limits, of the same shape.
     attribution : {"log-mean", "ladder"}
         Convention for the weights.
+    stacks : Stacks, optional
+        Luminescence of partial stacks.
 
     Returns
     -------
@@ -154,7 +172,33 @@ def quantities_of(cell: Cell, limit: Limit, attribution: Attribution) -> Quantit
         weight_current=weights[0],
         weight_voltage=weights[1],
         weight_fill=weights[2],
+        more={} if stacks is None else _of_stacks(stacks, cell, voc_rad, vt, attribution),
     )
+
+
+def _of_stacks(
+    stacks: Stacks, cell: Cell, voc_rad: Array, vt: Array, attribution: Attribution
+) -> dict[str, tuple[Meaning, Array]]:
+    """The numbers of partial stacks: of contact k, counted from 1, under names that end in k."""
+    split = splitting_of(stacks, voc_rad, vt, attribution)
+    nonradiative = np.where(np.isnan(cell.ere), voc_rad - cell.voc, -vt * np.log(cell.ere))[()]
+    found = "measured" if stacks.finished is not None else "absorber and contacts added up"
+    numbers = {
+        "nonradiative": (Meaning("ΔV_nr", "V", "all non-radiative loss of voltage"), nonradiative),
+        "yield_bare": (Meaning("Y_bare", "", "luminescence yield of the bare absorber"), split.bare),
+        "yield_stack": (Meaning("Y_stack", "", f"luminescence yield of the finished stack ({found})"), split.stack),
+        "contacts": (
+            Meaning("ΔV_contacts", "V", "shares of the single contacts"),
+            sum(split.shares, np.zeros(()))[()],
+        ),
+    }
+    for k, ((name, _), alone, share) in enumerate(zip(stacks.contacts, split.alone, split.shares, strict=True), 1):
+        numbers[f"yield_{k}"] = (Meaning(f"Y_{k}", "", f"luminescence yield with {name} alone"), alone)
+        numbers[f"share_{k}"] = (Meaning(f"ΔV_{k}", "V", f"share of {name}"), share)
+    for k, value in enumerate(split.recombination):
+        which = "the absorber" if k == 0 else f"the absorber and the first {k} contact{'s' if k > 1 else ''}"
+        numbers[f"recombination_{k}"] = (Meaning(f"R_{k}", "", f"recombination of {which} over emission"), value)
+    return numbers
 
 
 def _fill_factors(cell: Cell, vt: Array) -> dict[str, Array]:

@@ -11,11 +11,22 @@ from physics.ledger import Ledger, ledger_of
 from physics.limit import detailed_balance_limit
 from physics.quantities import Quantities
 from physics.spectrum import reference_spectrum
+from physics.stacks import Luminescence, Stacks
 
 from .published import AUGER_LIMITED_SILICON, CERTIFIED
 
 AM15G = reference_spectrum("am15g")
 SOUND = {"gap": 1.5, "voc": 1.1, "jsc": 24.0, "ff": 0.78, "ideality": 1.4, "rs": 1.0, "rsh": 3000.0}
+
+
+def _yields(bare: float, *contacts: float) -> Stacks:
+    of = [Luminescence(fraction=np.float64(value)) for value in (bare, *contacts)]
+    return Stacks(of[0], tuple((f"contact {k}", each) for k, each in enumerate(of[1:])))
+
+
+def _finished(voltage: float) -> Stacks:
+    return Stacks(Luminescence(fraction=np.float64(0.03)), (), Luminescence(voltage=np.float64(voltage)))
+
 
 #: A cell that trips the check, and one a little to the other side of it. The limit of 1.5 eV at 100 mW cm⁻² is
 #: 28.98 mA cm⁻², 1.233 V, 28.98 · 1.233 · 0.900 mW cm⁻² (recomputed in test_limit_quadrature.py).
@@ -35,7 +46,18 @@ CASES = {
 }
 
 
-def _ledger(changes: dict[str, float]) -> Ledger:
+#: Likewise for partial stacks: the bare absorber and either one contact after another, or the finished cell by its
+#: implied voltage. Voc is 1.1 V, and 24 mA cm⁻² bring the limit's voltage down to 1.228 V.
+STACKS = {
+    "stacks_contradict": (_yields(0.03, 0.05, 0.08), _yields(0.03, 0.05, 0.07)),
+    "stack_above_radiative": (_finished(1.229), _finished(1.227)),
+    "stack_below_voc": (_finished(1.069), _finished(1.071)),
+}
+
+
+def _ledger(changes: dict[str, float] | Stacks) -> Ledger:
+    if isinstance(changes, Stacks):
+        return ledger_of(Cell.of(**SOUND), AM15G, stacks=changes)
     return ledger_of(Cell.of(**(SOUND | changes)), AM15G)
 
 
@@ -48,13 +70,13 @@ def test_a_sound_cell_passes() -> None:
 
 
 def test_every_check_has_its_case() -> None:
-    assert set(CASES) == {check.key for check in CHECKS}
-    assert len(CHECKS) == len(CASES)
+    assert set(CASES) | set(STACKS) == {check.key for check in CHECKS}
+    assert len(CHECKS) == len(CASES) + len(STACKS)
 
 
-@pytest.mark.parametrize("key", CASES)
+@pytest.mark.parametrize("key", [*CASES, *STACKS])
 def test_each_check_on_either_side(key: str) -> None:
-    bad, good = CASES[key]
+    bad, good = (CASES | STACKS)[key]
     assert key in _keys(_ledger(bad))
     assert key not in _keys(_ledger(good))
 
@@ -69,7 +91,7 @@ def test_masks_are_by_cell() -> None:
 def test_messages_name_quantities_and_fields(check: Check) -> None:
     names = {name for _, name, _, _ in Formatter().parse(check.message) if name is not None}
     assert names <= set(Quantities.__dataclass_fields__)
-    assert check.field in Cell.__dataclass_fields__
+    assert check.field in {*Cell.__dataclass_fields__, "stacks"}
     text = check.message.format(**dict.fromkeys(names, 1.23456))
     assert text.endswith(".")
     assert "{" not in text

@@ -1,11 +1,7 @@
 """The equation that a line shows is the one that it is computed by."""
 
-import re
-from string import Formatter
-
 import numpy as np
 import pytest
-from numpy.typing import NDArray
 
 from physics.ledger import ledger_of
 from physics.lines import CURRENT, FILL, LIMIT_FILL, LIMIT_VOLTAGE, LINES, POWER, VOLTAGE, Factor, Form, Line
@@ -13,49 +9,30 @@ from physics.quantities import Quantities, meaning
 from physics.spectrum import reference_spectrum
 
 from .cells import random_cells
+from .equations import evaluate, names_in
 
-Array = NDArray[np.float64]
-NAMES = set(Quantities.__dataclass_fields__)
+NAMES = set(Quantities.__dataclass_fields__) - {"more"}
 LEDGER = ledger_of(random_cells(2000, reference_spectrum("am15g"), seed=31), reference_spectrum("am15g"))
 FORMS = [pytest.param(line, form, id=f"{line.key}-{k}") for line in LINES for k, form in enumerate(line.forms)]
 FACTORS = [POWER, LIMIT_VOLTAGE, LIMIT_FILL, CURRENT, VOLTAGE, FILL]
 
 
-def _names(equation: str) -> set[str]:
-    fields = list(Formatter().parse(equation))
-    assert all(not spec and not conversion for _, _, spec, conversion in fields)
-    return {name for _, name, _, _ in fields if name is not None}
-
-
-def _evaluate(equation: str, q: Quantities) -> Array:
-    """The text as it stands, with numbers in place of names; Eg/q, in volts, has the number of Eg in eV."""
-    text = equation.replace("−", "-").replace("·", "*").replace("/q", "")
-    text = re.sub(r"ln \{(\w+)\}", r"ln({\1})", text)
-    rest = re.sub(r"\{\w+\}", "", text)
-    assert re.fullmatch(r"(?:ln|exp|[-+*/()0-9. ])*", rest), f"not arithmetic: {rest!r}"
-    code = re.sub(r"\{(\w+)\}", r"(\1)", text)
-    numbers = {name: getattr(q, name) for name in _names(equation)}
-    with np.errstate(invalid="ignore"):
-        value = eval(code, {"__builtins__": {}, "ln": np.log, "exp": np.exp}, numbers)
-    return np.broadcast_to(np.asarray(value, dtype=float), q.incident.shape)
-
-
 def test_every_name_is_a_quantity() -> None:
     for line in LINES:
         for form in line.forms:
-            assert _names(form.equation)
-            assert _names(form.equation) <= NAMES
+            assert names_in(form.equation)
+            assert names_in(form.equation) <= NAMES
             if form.implied is not None:
-                assert _names(form.implied.equation) <= NAMES
+                assert names_in(form.implied.equation) <= NAMES
     for factor in FACTORS:
-        assert _names(factor.weight_equation) <= NAMES
+        assert names_in(factor.weight_equation) <= NAMES
     assert {id(line.factor) for line in LINES} == {id(factor) for factor in FACTORS}
 
 
 @pytest.mark.parametrize(("line", "form"), FORMS)
 def test_text_and_calculation_are_one(line: Line, form: Form) -> None:
     q = LEDGER.quantities
-    text, computed = _evaluate(form.equation, q), form.delta(q)
+    text, computed = evaluate(form.equation, q), form.delta(q)
     np.testing.assert_array_equal(np.isnan(text), np.isnan(computed))
     np.testing.assert_allclose(text, computed, rtol=1e-13, atol=1e-15)
     used = LEDGER[line.key].form == line.forms.index(form)
@@ -68,14 +45,14 @@ def test_text_and_calculation_are_one(line: Line, form: Form) -> None:
 def test_implied_figures_too(line: Line, form: Form) -> None:
     if form.implied is None:
         return
-    text = _evaluate(form.implied.equation, LEDGER.quantities)
+    text = evaluate(form.implied.equation, LEDGER.quantities)
     np.testing.assert_allclose(form.implied.value(LEDGER.quantities), text, rtol=1e-13)
 
 
 @pytest.mark.parametrize("line", LINES, ids=lambda line: line.key)
 def test_loss_is_weight_times_change(line: Line) -> None:
     q, entry = LEDGER.quantities, LEDGER[line.key]
-    weight = _evaluate(line.factor.weight_equation, q) if line.factor.weight_equation else np.ones(q.incident.shape)
+    weight = evaluate(line.factor.weight_equation, q) if line.factor.weight_equation else np.ones(q.incident.shape)
     np.testing.assert_allclose(entry.loss, weight * entry.delta, rtol=1e-14)
 
 
@@ -84,7 +61,7 @@ def test_the_weight_equations_of_the_limit_are_those_of_the_lines() -> None:
     for factor in FACTORS:
         if factor.weight_equation:
             np.testing.assert_array_equal(
-                _evaluate(factor.weight_equation, LEDGER.quantities), factor.weight(LEDGER.quantities)
+                evaluate(factor.weight_equation, LEDGER.quantities), factor.weight(LEDGER.quantities)
             )
         else:
             assert (factor.weight(LEDGER.quantities) == 1).all()
