@@ -166,7 +166,7 @@ _WEIGHTS = {
 }
 
 
-def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
+def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation | None:
     """How an amount was found.
 
     Parameters
@@ -179,10 +179,10 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
     spectrum : str
         Short name of the light.
 
-    Raises
-    ------
-    KeyError
-        When there is no such line.
+    Returns
+    -------
+    Explanation or None
+        None where the ledger has no such line.
     """
     q = ledger.quantities
     if key == "detailed_balance":
@@ -196,6 +196,8 @@ def explain(ledger: Ledger, key: str, spectrum: str = "") -> Explanation:
         return Explanation("Sunlight", f"{title}, taken as 100 %", (), given, "", "the irradiance of the measurement")
     if key == "cell":
         return _total("The cell", ledger, "{jsc} · {voc} · {ff}", "power", Basis.MEASURED.value, "measured figures")
+    if key not in ledger:
+        return None
     entry = ledger[key]
     form = entry.form_at()
     if form is None:

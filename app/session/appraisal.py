@@ -11,6 +11,7 @@ import numpy as np
 from app.session.curves import curve_figures
 from app.session.fields import FIELD_BY_KEY, FIELDS
 from app.session.light import light_named
+from app.session.stacks import stacks_of
 from app.session.state import CellEntry, Choices, Unread
 from physics.cell import UNKNOWN, Cell
 from physics.checks import Check, Severity, failed
@@ -27,7 +28,7 @@ class Problem:
     Parameters
     ----------
     field : str
-        Key of the field, "spectrum" for the light, or "" for the cell as a whole.
+        Key of the field, "spectrum" for the light, "stacks" for the partial stacks, or "" for the cell as a whole.
     severity : Severity
     message : str
         One plain sentence.
@@ -154,7 +155,16 @@ def appraise(entry: CellEntry, choices: Choices) -> Appraisal:
     sound = {key: None if key in wrong else value for key, value in entry.values.items()}
     cell = _cell_of(entry, sound, choices)
     limit = limit_under(entry.spectrum, float(cell.gap), float(cell.temperature), float(cell.irradiance), choices.faces)
-    ledger = ledger_against(cell, limit, choices.attribution)
-    problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in failed(ledger)]
+    stacks = stacks_of(entry.stacks, float(cell.temperature))
+    if entry.stacks.fault:
+        problems.append(Problem("stacks", Severity.DOUBTFUL, entry.stacks.fault))
+    ledger = ledger_against(cell, limit, choices.attribution, stacks)
+    missed = failed(ledger)
+    if any(check.field == "stacks" and check.severity is Severity.IMPOSSIBLE for check, _ in missed):
+        # The cell has a ledger all the same: the one without the split.
+        problems += [Problem("stacks", Severity.DOUBTFUL, c.message) for c, _ in missed if c.field == "stacks"]
+        ledger = ledger_against(cell, limit, choices.attribution)
+        missed = failed(ledger)
+    problems += [Problem(check.field, check.severity, check_sentence(check, ledger)) for check, _ in missed]
     forbidden = any(p.severity is Severity.IMPOSSIBLE for p in problems)
     return Appraisal(entry, tuple(problems), None if forbidden else ledger)

@@ -8,6 +8,7 @@ from typing import Protocol
 
 from app.session.curves import Curves, Source
 from app.session.fields import FIELD_BY_KEY
+from app.session.stacks import StackReadings
 from app.session.state import CellEntry, Choices, State, Value
 
 
@@ -68,6 +69,25 @@ class SetFigures:
     def apply(self, state: State) -> State:
         cell = state.cells[state.position(self.ident)].with_figures(self.values, self.sources)
         return state.with_cell(cell if self.curves is None else replace(cell, curves=self.curves))
+
+
+@dataclass(frozen=True)
+class SetStacks:
+    """Change what is known of a cell's partial stacks."""
+
+    ident: int
+    stacks: StackReadings
+
+    @property
+    def name(self) -> str:
+        return "change of the partial stacks"
+
+    @property
+    def merge(self) -> Hashable:
+        return ("stacks", self.ident)
+
+    def apply(self, state: State) -> State:
+        return state.with_cell(replace(state.cells[state.position(self.ident)], stacks=self.stacks))
 
 
 @dataclass(frozen=True)

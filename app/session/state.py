@@ -8,6 +8,7 @@ from types import MappingProxyType
 
 from app.session.curves import NO_CURVES, Curves, Source
 from app.session.fields import FIELDS
+from app.session.stacks import NO_STACKS, StackReadings
 from physics.attribution import Attribution
 from physics.limit import Faces
 
@@ -44,6 +45,8 @@ class CellEntry:
         What was measured of it beside single figures.
     sources : mapping of str to Source
         By field: where its value was read off, if it was not typed.
+    stacks : StackReadings
+        Luminescence of its partial stacks.
     """
 
     ident: int
@@ -54,6 +57,7 @@ class CellEntry:
     note: str = ""
     curves: Curves = NO_CURVES
     sources: Mapping[str, Source] = field(default_factory=lambda: TYPED)
+    stacks: StackReadings = NO_STACKS
 
     def with_value(self, key: str, value: Value) -> CellEntry:
         """The same cell with one field typed anew."""

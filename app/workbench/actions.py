@@ -31,6 +31,7 @@ if TYPE_CHECKING:
     from app.workbench.export_panel import ExportPanel
     from app.workbench.help_panel import HelpPanel
     from app.workbench.import_panel import ImportPanel
+    from app.workbench.stacks_panel import StacksPanel
     from app.workbench.window import Window
 
 
@@ -44,6 +45,7 @@ class Actions(QObject):
         self._export: ExportPanel | None = None
         self._help: HelpPanel | None = None
         self._import: ImportPanel | None = None
+        self._stacks: StacksPanel | None = None
         self._waiting: list[tuple[MeasuredText, Reading]] = []
         self._choices: dict[str, Reading] = {}  # how files of a shape were read the last time
         self._needs_picture: list[QAction] = []
@@ -92,6 +94,7 @@ class Actions(QObject):
         open_ = self._action("&Open cells or measured curves…", self._ask_open, standard.Open)
         inflection = self._action("Gap from the EQE's &inflection", lambda: self._take_gap("inflection"), None, cell)
         mean = self._action("Gap from the EQE's edge &mean", lambda: self._take_gap("edge mean"), None, cell)
+        self.stacks = self._action("Partial &stacks…", self.show_stacks, None, cell)
         save_shelf = self._action("&Save the shelf as a table…", self._ask_save_shelf, standard.Save, cell)
         save_ledger = self._action("Save the &ledger as CSV…", self._ask_save_ledger, "Ctrl+Shift+S", picture)
         quit_ = self._action("&Quit", self._window.close, standard.Quit)
@@ -100,7 +103,8 @@ class Actions(QObject):
         help_ = self._action("&Cautions, conventions and keys", self.show_help, standard.HelpContents)
         self._menu("&File", (open_, save_shelf, None, self.export, save_ledger, None, quit_))
         self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table))
-        self._menu("&Cell", (self.new, self.duplicate, self.remove, None, inflection, mean, None, previous, following))
+        known = (inflection, mean, self.stacks)
+        self._menu("&Cell", (self.new, self.duplicate, self.remove, None, *known, None, previous, following))
         self._menu("&Help", (help_,))
 
     def _fill_bar(self) -> None:
@@ -158,10 +162,12 @@ class Actions(QObject):
                 box.setCurrentIndex(box.findData(value))
         if self._export is not None and self._export.isVisible():
             self._export.refresh()
+        if self._stacks is not None and self._stacks.isVisible():
+            self._stacks.refresh(outcome)
 
     def close_panels(self) -> None:
         """Close the windows beside the main one."""
-        for panel in (self._export, self._help, self._import):
+        for panel in (self._export, self._help, self._import, self._stacks):
             if panel is not None:
                 panel.close()
 
@@ -332,6 +338,16 @@ class Actions(QObject):
             self._export.told.connect(self._say)
         self._export.show()
         self._export.raise_()
+
+    def show_stacks(self) -> None:
+        """Bring up the luminescence of the cell's partial stacks."""
+        from app.workbench.stacks_panel import StacksPanel
+
+        if self._stacks is None:
+            self._stacks = StacksPanel(self._session, self._window.theme, self._window)
+        self._stacks.refresh(self._window.outcomes.current())
+        self._stacks.show()
+        self._stacks.raise_()
 
     def show_help(self) -> None:
         """Bring up cautions, conventions and keys."""

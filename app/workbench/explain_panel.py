@@ -25,7 +25,7 @@ from app.workbench.theme import Theme
 
 _HINT = "Pick a bar of the waterfall or a row of the table to see how it was computed."
 _MARGIN = 10.0
-_SUBSCRIPT = re.compile(r"_([A-Za-z0-9,=]+(?: Rsh| Rs)?)")
+_SUBSCRIPT = re.compile(r"_([A-Za-z0-9,=]*[A-Za-z0-9=](?: Rsh| Rs)?)")
 
 
 def plain_explanation(explanation: Explanation) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from PySide6.QtCore import Qt
-from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QScrollArea, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
 
 from app.session.appraisal import Appraisal
 from app.session.commands import Describe, SetValue
@@ -43,6 +43,7 @@ class InputsPanel(QScrollArea):
         self.spectrum_message = QLabel()
         self.fields: dict[str, NumberField] = {}
         self._troubled = False
+        self._stacks_shown = 0
         column = QVBoxLayout(self._page)
         column.setContentsMargins(10, 4, 10, 8)
         column.setSpacing(3)
@@ -54,6 +55,7 @@ class InputsPanel(QScrollArea):
                 self._add_spectrum(column)
             for key in keys:
                 self._add_field(column, key)
+        self._add_stacks(column)
         column.addStretch(1)
         self.setWidget(self._page)
         theme.changed.connect(self._recolour)
@@ -108,6 +110,19 @@ class InputsPanel(QScrollArea):
         column.addLayout(self._row("Light", self.spectrum))
         column.addWidget(self.spectrum_message)
 
+    def _add_stacks(self, column: QVBoxLayout) -> None:
+        self.stacks = QPushButton("Partial stacks…")
+        self.stacks.setToolTip(
+            "Luminescence of the bare absorber, of stacks with one contact, and of the finished cell:\n"
+            "it splits the non-radiative line into absorber, interfaces and contacts"
+        )
+        self.stacks_message = QLabel()
+        self.stacks_message.setWordWrap(True)
+        self.stacks_message.setProperty("trouble", "doubtful")
+        self.stacks_message.hide()
+        column.addWidget(self.stacks)
+        column.addWidget(self.stacks_message)
+
     @property
     def sliding(self) -> bool:
         """Whether the user holds a slider."""
@@ -135,6 +150,10 @@ class InputsPanel(QScrollArea):
                 editor.setText(text)
                 editor.setCursorPosition(0)
         self._show_spectrum(entry.spectrum)
+        count = len(entry.stacks.readings)
+        if count != self._stacks_shown:
+            self._stacks_shown = count
+            self.stacks.setText(f"Partial stacks ({count})…" if count else "Partial stacks…")
         for key, field in self.fields.items():
             field.show_value(entry.values[key])
         troubled, self._troubled = self._troubled, bool(appraisal.problems)
@@ -148,6 +167,10 @@ class InputsPanel(QScrollArea):
         self.spectrum_message.setVisible(problem is not None)
         if problem is not None:
             self.spectrum_message.setText(f"✕ {problem.message}")
+        problem = appraisal.about("stacks")
+        self.stacks_message.setVisible(problem is not None)
+        if problem is not None:
+            self.stacks_message.setText(f"▲ {problem.message}")
 
     def _show_spectrum(self, name: str) -> None:
         if self.spectrum.currentData() == name:

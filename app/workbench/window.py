@@ -64,6 +64,7 @@ class Window(QMainWindow):
         self.waterfall.picked.connect(session.pick_line)
         self.waterfall.first_painted.connect(self._complete, Qt.ConnectionType.QueuedConnection)
         self.table.line_picked.connect(session.pick_line)
+        self.inputs.stacks.clicked.connect(self.actions_.show_stacks)
         self.refresh()
 
     def _lay_out(self) -> QWidget:
