@@ -1,33 +1,17 @@
-"""From a cell's picture to the descriptions of its charts. No Qt, no physics: numbers in, texts and positions out."""
+"""From a cell's picture to the description of its waterfall. No Qt, no physics: numbers in, texts and positions out."""
 
 from __future__ import annotations
 
-import math
 from functools import lru_cache
 
-import numpy as np
-
-from app.figures.spec import Dash, Mark, PlotSpec, Role, Segment, Series, Side, Step, WaterfallSpec
+from app.figures.plot_parts import STALE, caption_of, cell_name, round_range
+from app.figures.spec import Role, Segment, Step, WaterfallSpec
 from app.session.light import light_named
 from app.session.outcome import Picture
-from app.wording import (
-    basis_text,
-    conventions_text,
-    delta_text,
-    inputs_text,
-    loss_text,
-    percent,
-    shown_name,
-    unbroken,
-    with_unit,
-)
+from app.wording import basis_text, delta_text, loss_text, percent, with_unit
 from physics.ledger import Entry, Ledger, entries_of
-from physics.limit import Limit
 from physics.lines import Basis, Family, Section
-from physics.units import EV_NM
 
-STALE = "Last valid input: the fields marked in red do not enter"
-_LONGEST_BESIDE = 16
 _ROLES: dict[Family, Role] = {
     Family.SPECTRAL: "spectral",
     Family.VOLTAGE: "voltage",
@@ -40,39 +24,6 @@ _FAMILY_NAMES: dict[Family, str] = {
     Family.NONRADIATIVE: "Non-radiative",
     Family.FILL: "Fill factor",
 }
-
-
-def nice_step(span: float) -> float:
-    """A round step (1, 2 or 5 times a power of ten) that cuts a span into four to ten pieces."""
-    raw = span / 4.0
-    power = 10.0 ** math.floor(math.log10(raw))
-    return next(power * m for m in (5.0, 2.0, 1.0) if power * m <= raw * (1 + 1e-12))
-
-
-def round_range(low: float, high: float) -> tuple[float, float]:
-    """The smallest range with round ends that holds both numbers."""
-    step = nice_step(max(high - low, 1e-9))
-    return step * math.floor(low / step + 1e-9), step * math.ceil(high / step - 1e-9)
-
-
-def caption_of(picture: Picture) -> tuple[str, ...]:
-    """Small print under every chart of a cell."""
-    entry = picture.entry
-    light = light_named(entry.spectrum).title
-    lines = [f"{inputs_text(entry)} · {unbroken(light)}", conventions_text(picture.choices)]
-    if entry.note:
-        lines.append(shown_name(entry.note))
-    return tuple(lines)
-
-
-def _name(picture: Picture) -> str:
-    return shown_name(picture.entry.name) or "Unnamed cell"
-
-
-def _short_name(picture: Picture) -> str:
-    """The name where it stands beside a point."""
-    name = _name(picture)
-    return name if len(name) <= _LONGEST_BESIDE else f"{name[: _LONGEST_BESIDE - 1].rstrip()}…"
 
 
 def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
@@ -88,7 +39,7 @@ def waterfall_of(picture: Picture, stale: bool = False) -> WaterfallSpec:
     ledger = picture.ledger
     incident = float(ledger.limit.incident)
     limit, cell = float(ledger.limit.efficiency), float(ledger.efficiency)
-    name = _name(picture)
+    name = cell_name(picture)
     steps = _steps(name, ledger)
     families = [f for f in _FAMILY_NAMES if any(e.line.family is f for e in ledger.entries)]
     return WaterfallSpec(
@@ -180,120 +131,3 @@ def _axis(steps: tuple[Step, ...]) -> tuple[float, float]:
     return round_range(floor if floor > 0.12 * high else 0.0, high + 0.02 * span)
 
 
-def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
-    """Current density against voltage: the cell and its limit. A live plot has no room for a caption."""
-    ledger, cell_curve = picture.ledger, picture.cell_curve
-    limit = ledger.limit
-    drawn = not math.isnan(cell_curve.ideality)
-    series = [Series("limit", "Limit", picture.limit_curve.voltage, picture.limit_curve.current, "limit", "dashed")]
-    marks = [_power_mark("limit", picture.limit_curve.voltage, picture.limit_curve.current, float(limit.efficiency))]
-    sweeps = [sweep for sweep in picture.entry.curves.sweeps if sweep.lit]
-    for k, sweep in enumerate(sweeps):
-        dash: Dash = "solid" if k == 0 else "dotted"
-        label = sweep.direction or f"sweep {k + 1}"
-        series.append(Series(f"sweep {k}", f"{label} (measured)", sweep.voltage, sweep.current, "cell", dash))
-    if drawn:
-        if not sweeps:
-            label = f"{_short_name(picture)} (modelled)"
-            series.append(Series("cell", label, cell_curve.voltage, cell_curve.current, "cell"))
-        marks.append(_power_mark("cell", cell_curve.voltage, cell_curve.current, float(ledger.efficiency)))
-        note = (
-            "Cell: measured sweep; the mark stands on a one-diode curve through Voc, Jsc and FF"
-            if sweeps
-            else "Cell: one-diode curve drawn through Voc, Jsc and FF "
-            f"(n = {cell_curve.ideality:.3g}), not a measured sweep"
-        )
-    else:
-        marks.append(Mark("voc", "Voc", float(ledger.cell.voc), 0.0, "cell"))
-        marks.append(Mark("jsc", "Jsc", 0.0, float(ledger.cell.jsc), "cell"))
-        note = "Cell: no diode curve has so low a fill factor, so only Voc and Jsc are shown"
-    return PlotSpec(
-        title=f"{_name(picture)}: current density against voltage",
-        x_label="Voltage (V)",
-        y_label="Current density (mA cm⁻²)",
-        y_short="J (mA cm⁻²)",
-        x_range=round_range(0.0, 1.02 * max(float(limit.voc), float(ledger.cell.voc))),
-        y_range=round_range(0.0, 1.12 * max(float(limit.jsc), float(ledger.cell.jsc))),
-        series=tuple(series),
-        marks=tuple(marks),
-        caption=(note, *caption_of(picture)) if captioned else (),
-        stale=STALE if stale else "",
-    )
-
-
-def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency: float) -> Mark:
-    """The mark at the maximum power point of a drawn curve (nearest drawn point: a place, not a figure)."""
-    at = int(np.argmax(voltage * current))
-    side: Side = "n" if role == "limit" else "sw"  # over the outer curve, and inside the inner one
-    return Mark(str(role), percent(efficiency, 1), float(voltage[at]), float(current[at]), role, side=side)
-
-
-def eqe_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec | None:
-    """The EQE over photon energy with its edge, both gaps and the tail; None where the cell has no EQE."""
-    eqe, edge = picture.entry.curves.eqe, picture.edge
-    if eqe is None or edge is None:
-        return None
-    energy = EV_NM / eqe.wavelength[::-1]
-    series = [Series("eqe", "EQE", energy, 100.0 * eqe.value[::-1], "cell")]
-    marks: list[Mark] = []
-    high = max(105.0, 105.0 * float(np.max(eqe.value)))
-    if edge.energy.size:
-        scale = 50.0 / float(np.max(edge.slope))
-        series.append(Series("slope", "dEQE/dE", edge.energy, scale * edge.slope, "limit", "dotted"))
-        inflection, mean = with_unit(edge.inflection, "eV", 5), with_unit(edge.mean, "eV", 5)
-        on_curve = 100.0 * float(eqe.at(edge.inflection))
-        marks = [
-            Mark("inflection", f"inflection {inflection}", edge.inflection, on_curve, "limit", "diamond", False, "se"),
-            Mark("mean", f"edge mean {mean}", edge.mean, 0.0, "limit", "diamond", False, "ne"),
-        ]
-    note = "No tail extrapolated"
-    tail, _ = edge.tail_at(float(picture.ledger.cell.temperature))  # as the ledger uses it
-    if tail is not None:
-        below = np.linspace(tail.start - 6.0 * tail.slope, tail.start, 60, endpoint=False)
-        value = 100.0 * tail.at(below)
-        series.append(Series("tail", "tail", below, value, "non-radiative", "dashed"))
-        note = f"Tail: exponential, {with_unit(1e3 * tail.slope, 'meV', 3)}"
-    return PlotSpec(
-        title=f"{_name(picture)}: external quantum efficiency",
-        x_label="Photon energy (eV)",
-        y_label="EQE (%)",
-        x_range=round_range(float(energy[0]), float(energy[-1])),
-        y_range=round_range(0.0, high),
-        series=tuple(series),
-        marks=tuple(marks),
-        caption=(note, *caption_of(picture)) if captioned else (),
-        stale=STALE if stale else "",
-    )
-
-
-@lru_cache(maxsize=8)
-def _limits_curve(gaps: Limit) -> tuple[Series, float, float]:
-    """The curve of limits [%] over the gap [eV], the gap of its maximum, and the maximum [%]."""
-    curve = 100.0 * gaps.efficiency
-    at = int(np.argmax(curve))
-    return Series("limit", "Detailed-balance limit", gaps.gap, curve, "limit"), float(gaps.gap[at]), float(curve[at])
-
-
-def gap_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
-    """Efficiency of the limit against the gap, with the cell and its limit as marks."""
-    gaps, ledger = picture.gap_curve, picture.ledger
-    gap, limit, cell = float(ledger.limit.gap), float(ledger.limit.efficiency), float(ledger.efficiency)
-    series, best, top = _limits_curve(gaps)
-    high = 100 * limit > 0.92 * top
-    clear: Side = "ne" if high or gap > best else "se"  # over the falling side of the curve, under the rising one
-    return PlotSpec(
-        title=f"{_name(picture)}: efficiency against the gap",
-        x_label="Gap (eV)",
-        y_label="Efficiency (%)",
-        x_range=(0.4, 3.0) if 0.4 <= gap <= 3.0 else round_range(min(gap, 0.4), max(gap, 3.0)),
-        y_range=round_range(0.0, 1.04 * top),
-        series=(series,),
-        marks=(
-            Mark(
-                "limit", f"limit {percent(limit, 1)}", gap, 100 * limit, "limit", "diamond", False, clear,
-            ),
-            Mark("cell", f"cell {percent(cell, 1)}", gap, 100 * cell, "cell", side="s"),
-        ),
-        caption=caption_of(picture) if captioned else (),
-        stale=STALE if stale else "",
-    )

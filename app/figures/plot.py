@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 import numpy as np
+from numpy.typing import NDArray
 from PySide6.QtCore import QRectF
 
 from app.figures.blocks import LEADING, banner_height, banner_lines, caption_lines, heading, paint_banner, paint_lines
@@ -24,7 +25,6 @@ from app.figures.plot_layout import (
 from app.figures.sheet import CAP, Sheet
 from app.figures.spec import Dash, Mark, PlotSpec, Role, Series, Symbol
 from app.figures.style import Style
-from app.figures.ticks import tick_texts
 
 #: A text further from its mark than this, in type sizes, is tied to it by a thin line.
 _LEADER = 0.9
@@ -78,8 +78,13 @@ def paint_plot(sheet: Sheet, spec: PlotSpec, rect: QRectF, style: Style, palette
         labels = mark_labels(sheet, spec, grid, _points(curves, style), style)
     _paint_grid(sheet, spec, grid, left, style, palette)
     for series, (x, y) in zip(spec.series, curves, strict=True):
+        if series.filled:
+            _paint_area(sheet, series, grid, shown)
+            continue
         colour = _ink(series.role, shown, bool(spec.stale))
         sheet.polyline(x, y, colour, style.curve, dashes(series.dash, style.curve))
+        if series.markers:
+            _paint_dots(sheet, series, grid, colour, style)
     for mark, area in zip(spec.marks, labels, strict=True):
         _paint_leader(sheet, mark, area, grid, style, palette)
     for mark, area in zip(spec.marks, labels, strict=True):
@@ -157,6 +162,31 @@ def _curve(series: Series, grid: Grid) -> tuple[Floats, Floats]:
     return clipped(grid.x(x), grid.y(y), grid.frame)
 
 
+def _runs(known: NDArray[np.bool_]) -> list[slice]:
+    """Runs of points without a break."""
+    edges = np.flatnonzero(np.diff(np.concatenate([[False], known, [False]]).astype(np.int8)))
+    return [slice(int(start), int(stop)) for start, stop in zip(edges[::2], edges[1::2], strict=True)]
+
+
+def _paint_area(sheet: Sheet, series: Series, grid: Grid, palette: Palette) -> None:
+    """Fill from a curve down to the foot of the frame."""
+    frame = grid.frame
+    x = np.clip(grid.x(np.asarray(series.x, dtype=np.float64)), frame.left(), frame.right())
+    y = np.clip(grid.y(np.asarray(series.y, dtype=np.float64)), frame.top(), frame.bottom())
+    for run in _runs(np.isfinite(x) & np.isfinite(y)):
+        rim = list(zip(x[run].tolist(), y[run].tolist(), strict=True))
+        corners = [(rim[0][0], frame.bottom()), *rim, (rim[-1][0], frame.bottom())]
+        sheet.polygon(corners, palette.tones[series.role].fill)
+
+
+def _paint_dots(sheet: Sheet, series: Series, grid: Grid, colour: str, style: Style) -> None:
+    """A dot on each point inside the frame."""
+    frame = grid.frame.adjusted(-0.5, -0.5, 0.5, 0.5)
+    for x, y in zip(grid.x(np.asarray(series.x)).tolist(), grid.y(np.asarray(series.y)).tolist(), strict=True):
+        if frame.contains(x, y):
+            sheet.ellipse(x, y, style.curve * 1.4, colour)
+
+
 def _points(curves: list[tuple[Floats, Floats]], style: Style) -> Floats:
     parts = [dense(x, y, style.base * 0.25) for x, y in curves]
     return np.vstack(parts) if parts else np.empty((0, 2))
@@ -170,7 +200,13 @@ def _paint_key(
         for series in row:
             colour = _ink(series.role, palette, stale)
             end = x + style.small * 2.4
-            sheet.line(x, middle, end, middle, colour, style.curve, dashes(series.dash, style.curve))
+            if series.filled:
+                box = QRectF(x + style.small * 0.9, middle - style.small * 0.45, style.small * 1.5, style.small * 0.9)
+                sheet.rect(box, palette.tones[series.role].fill, palette.tones[series.role].outline, style.hairline)
+            else:
+                sheet.line(x, middle, end, middle, colour, style.curve, dashes(series.dash, style.curve))
+            if series.markers:
+                sheet.ellipse((x + end) / 2, middle, style.curve * 1.4, colour)
             sheet.text(x + style.small * 3.0, middle + CAP * style.small / 2, series.label, style.small, palette.ink)
             x += key_width(sheet, series, style) + style.small * 1.4
         top += style.small * 1.5
@@ -179,13 +215,13 @@ def _paint_key(
 def _paint_grid(sheet: Sheet, spec: PlotSpec, grid: Grid, left: float, style: Style, palette: Palette) -> None:
     frame, reach = grid.frame, style.base * 0.35
     thin = style.hairline
-    for value, text in zip(grid.x_ticks, tick_texts(grid.x_ticks), strict=True):
+    for value, text in grid.x_ticks:
         x = float(grid.x(np.array(value)))
         sheet.line(x, frame.top(), x, frame.bottom(), palette.grid, thin)
         sheet.line(x, frame.bottom(), x, frame.bottom() + reach, palette.frame, thin)
         baseline = frame.bottom() + reach + style.small * (0.25 + CAP)
         sheet.text(x, baseline, text, style.small, palette.muted, align="center")
-    for value, text in zip(grid.y_ticks, tick_texts(grid.y_ticks), strict=True):
+    for value, text in grid.y_ticks:
         y = float(grid.y(np.array(value)))
         zero = value == 0 and spec.y_range[0] < 0 < spec.y_range[1]
         sheet.line(frame.left(), y, frame.right(), y, palette.frame if zero else palette.grid, thin)

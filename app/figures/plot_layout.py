@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -26,8 +27,8 @@ class Grid:
     frame: QRectF
     x_range: tuple[float, float]
     y_range: tuple[float, float]
-    x_ticks: list[float]
-    y_ticks: list[float]
+    x_ticks: list[tuple[float, str]]
+    y_ticks: list[tuple[float, str]]
 
     def x(self, value: Floats) -> Floats:
         """Positions of values along x [units]."""
@@ -49,22 +50,31 @@ def layout_grid(sheet: Sheet, spec: PlotSpec, area: QRectF, style: Style) -> Gri
     """Place the frame in an area, with room for the numbers and names of both axes, and choose the ticks."""
     reach = style.base * _TICK
     height = max(style.base, area.height() - axis_foot(style))
-    y_ticks = axis_ticks(*spec.y_range, max(3, int(height / (style.small * 2.6))))
-    texts = tick_texts(y_ticks)
-    widest = max((sheet.width(text, style.small) for text in texts), default=0.0)
+    y_ticks = _ticks(spec.y_range, spec.y_names, max(3, int(height / (style.small * 2.6))))
+    widest = max((sheet.width(text, style.small) for _, text in y_ticks), default=0.0)
     left = style.base * 1.55 + widest + reach + style.small * 0.25
     # The last number of the x axis is centred under its tick: half of it may stand out at the right.
     right = style.base * 0.4
-    x_ticks: list[float] = []
+    x_ticks: list[tuple[float, str]] = []
     for most in range(10, 1, -1):
-        x_ticks = axis_ticks(*spec.x_range, most)
-        widths = [sheet.width(text, style.small) for text in tick_texts(x_ticks)]
+        x_ticks = _ticks(spec.x_range, spec.x_names, most)
+        widths = [sheet.width(text, style.small) for _, text in x_ticks]
         right = max(widths, default=0.0) / 2
         width = area.width() - left - right
         if len(widths) * (max(widths, default=0.0) + style.small * 1.1) <= width:
             break
     frame = QRectF(area.left() + left, area.top(), max(style.base, area.width() - left - right), height)
     return Grid(frame, spec.x_range, spec.y_range, x_ticks, y_ticks)
+
+
+def _ticks(
+    ends: tuple[float, float], names: tuple[tuple[float, str], ...], most: int
+) -> list[tuple[float, str]]:
+    """Positions and texts of ticks: the names of the axis, or round numbers."""
+    if names:
+        return [names[k] for k in range(0, len(names), math.ceil(len(names) / most))]
+    ticks = axis_ticks(*ends, most)
+    return list(zip(ticks, tick_texts(ticks), strict=True))
 
 
 def mark_at(mark: Mark, grid: Grid) -> tuple[float, float]:

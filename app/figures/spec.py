@@ -126,7 +126,11 @@ Dash = Literal["solid", "dashed", "dotted"]
 
 @dataclass(frozen=True, eq=False)
 class Series:
-    """A curve in data units; `x` and `y` are arrays of one length, NaN breaks the line."""
+    """A curve in data units; `x` and `y` are arrays of one length, NaN breaks the line.
+
+    With `filled`, the area between the curve and the foot of the frame is filled and the curve is its rim; with
+    `markers`, each point has a dot.
+    """
 
     key: str
     label: str
@@ -134,11 +138,13 @@ class Series:
     y: NDArray[np.float64]
     role: Role
     dash: Dash = "solid"
+    filled: bool = False
+    markers: bool = False
 
 
 Symbol = Literal["circle", "square", "diamond", "triangle"]
 #: Where a mark's text stands as seen from the mark, by the points of the compass.
-Side = Literal["n", "s", "ne", "nw", "se", "sw"]
+Side = Literal["n", "s", "e", "w", "ne", "nw", "se", "sw"]
 
 
 @dataclass(frozen=True)
@@ -161,7 +167,7 @@ class Mark:
 
 @dataclass(frozen=True)
 class PlotSpec:
-    """A plot of curves and marks over two linear axes.
+    """A plot of curves and marks over two linear axes; an axis of logarithms has its powers of ten as names.
 
     Parameters
     ----------
@@ -171,6 +177,8 @@ class PlotSpec:
         The name of the y axis for a place where it does not fit; empty where it is short already.
     x_range, y_range : (float, float)
         What the axes span, in data units.
+    x_names, y_names : tuple of (float, str)
+        Places on an axis and what is written there, in the stead of round numbers; may be empty.
     series : tuple of Series
         Curves, drawn in order.
     marks : tuple of Mark
@@ -191,6 +199,8 @@ class PlotSpec:
     caption: tuple[str, ...] = ()
     stale: str = ""
     y_short: str = ""
+    x_names: tuple[tuple[float, str], ...] = ()
+    y_names: tuple[tuple[float, str], ...] = ()
 
     def y_name(self, fits: bool) -> str:
         """Name of the y axis where the full one `fits`, or does not."""

@@ -11,10 +11,10 @@ from app.files.measured import EqeCurve, Irradiance, JvSweep, MeasuredCurve, Pai
 from app.files.numbers import write_number
 from app.files.table_error import TableError
 from app.session.commands import SetFigures
-from app.session.curves import Curves, Source, Sweep, edge_for, gap_figures
+from app.session.curves import Curves, Source, Sweep, edge_for, fit_for, gap_figures
 from app.session.fields import FIELD_BY_KEY
 from app.session.state import CellEntry, Value
-from physics.diode_fit import DiodeFit, fit_one_diode
+from physics.diode_fit import DiodeFit
 from physics.light_series import LightSeries, ideality_of, pseudo_curve
 from physics.quantum import Curve
 from physics.sweep import SweepFigures, density, figures_of_merit, hysteresis
@@ -116,7 +116,7 @@ def _take_sweeps(take: _Taking, measured: list[JvSweep]) -> None:
     figures = [figures_of_merit(s.voltage, s.current, irradiance) for s in lit]
     _put_figures(take, lit[0], figures[0])
     _tell_hysteresis(take, lit, figures)
-    _put_fit(take, fit_one_diode(lit[0].voltage, lit[0].current, take.number("temperature", 298.15)))
+    _put_fit(take, fit_for(lit[0], take.number("temperature", 298.15)))
 
 
 def _put_figures(take: _Taking, sweep: Sweep, figures: SweepFigures) -> None:

@@ -9,6 +9,7 @@ from typing import Literal
 import numpy as np
 
 from app.session.light import light_named
+from physics.diode_fit import DiodeFit, fit_one_diode
 from physics.edge import Edge, edge_of
 from physics.light_series import LightSeries
 from physics.quantum import Curve, collected_current, radiative_current
@@ -58,6 +59,12 @@ NO_CURVES = Curves()
 def edge_for(eqe: Curve) -> Edge:
     """Gap and tail of an EQE, found once."""
     return edge_of(eqe)
+
+
+@lru_cache(maxsize=32)
+def fit_for(sweep: Sweep, temperature: float) -> DiodeFit:
+    """One-diode fit to a lit sweep at a temperature [K], found once."""
+    return fit_one_diode(sweep.voltage, sweep.current, temperature)
 
 
 @lru_cache(maxsize=64)

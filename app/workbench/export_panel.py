@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 
@@ -21,7 +20,8 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
-from app.figures.charts import gap_plot_of, jv_plot_of, waterfall_of
+from app.figures.all_plots import PLOTS
+from app.figures.charts import waterfall_of
 from app.figures.errors import FigureError
 from app.figures.export import Background, Kind, image, render
 from app.figures.presets import PRESETS
@@ -33,19 +33,24 @@ from app.session.outcome import Outcomes, Picture
 from app.wording import shown_name
 
 Spec = WaterfallSpec | PlotSpec
-CHARTS: dict[str, tuple[str, Callable[[Picture, bool], Spec]]] = {
-    "waterfall": ("Waterfall", waterfall_of),
-    "jv": ("Current density against voltage", jv_plot_of),
-    "gap": ("Efficiency against the gap", gap_plot_of),
-}
+CHARTS: dict[str, str] = {"waterfall": "Waterfall"} | {plot.key: plot.title for plot in PLOTS}
 _BACKGROUNDS: tuple[tuple[str, Background], ...] = (("White", "white"), ("Transparent", "transparent"))
 _KINDS: tuple[tuple[str, Kind], ...] = (("PNG picture", "png"), ("SVG drawing", "svg"), ("PDF page", "pdf"))
 
 
-def chart_of(picture: Picture, chart: str, title: str = "") -> Spec:
-    """The description of one chart of a cell, under its own title or another."""
-    spec = CHARTS[chart][1](picture, False)
-    return replace(spec, title=shown_name(title)) if title.strip() else spec
+def offered_charts(picture: Picture) -> list[str]:
+    """The charts for which a cell has the data, by key."""
+    return ["waterfall", *(plot.key for plot in PLOTS if plot.offered(picture))]
+
+
+def chart_of(picture: Picture, chart: str, title: str = "") -> Spec | None:
+    """The description of one chart of a cell, under its own title or another; None where the data do not suffice."""
+    spec: Spec | None
+    if chart == "waterfall":
+        spec = waterfall_of(picture)
+    else:
+        spec = next(plot for plot in PLOTS if plot.key == chart).describe(picture)
+    return replace(spec, title=shown_name(title)) if spec is not None and title.strip() else spec
 
 
 def copy_image(picture: QImage) -> None:
@@ -74,7 +79,7 @@ class ExportPanel(QDialog):
         self._folder = Path.home()
         self.setWindowTitle("Export a picture")
         self.setModal(False)
-        self.chart = self._choice((title, key) for key, (title, _) in CHARTS.items())
+        self.chart = self._choice([(CHARTS["waterfall"], "waterfall")])
         self.preset = self._choice((p.title, p.key) for p in PRESETS.values())
         self.background = self._choice(_BACKGROUNDS)
         self.kind = self._choice(_KINDS)
@@ -93,6 +98,7 @@ class ExportPanel(QDialog):
         self.copy_button.clicked.connect(self.copy)
         self.save_button.clicked.connect(self._ask_and_save)
         self._lay_out()
+        self._offer()
 
     def _choice(self, options: object) -> QComboBox:
         box = QComboBox()
@@ -126,15 +132,37 @@ class ExportPanel(QDialog):
             return None
         return chart_of(outcome.picture, self.chart.currentData(), self.title.text())
 
+    def _offer(self) -> None:
+        """Offer the charts that the cell on show has the data for."""
+        outcome = self._outcomes.current()
+        if outcome.picture is None:
+            return
+        keys = offered_charts(outcome.picture)
+        if keys == [self.chart.itemData(at) for at in range(self.chart.count())]:
+            return
+        chosen = self.chart.currentData()
+        self.chart.blockSignals(True)
+        self.chart.clear()
+        for key in keys:
+            self.chart.addItem(CHARTS[key], key)
+        self.chart.setCurrentIndex(max(0, self.chart.findData(chosen)))
+        self.chart.blockSignals(False)
+
     def refresh(self) -> None:
         """Draw the preview anew."""
+        self._offer()
         spec = self._spec()
         for button in (self.copy_button, self.save_button):
             button.setEnabled(spec is not None)
         if spec is None:
             self.preview.setPixmap(QPixmap())
             self.preview.setText("")
-            self.message.setText("There is no picture of the present inputs: mend the fields marked in red first.")
+            outcome = self._outcomes.current()
+            self.message.setText(
+                "There is no picture of the present inputs: mend the fields marked in red first."
+                if outcome.picture is None or outcome.stale
+                else "The data do not suffice for this chart."
+            )
             return
         self.message.clear()
         picture = image(spec, PRESETS[self.preset.currentData()], background=self.background.currentData())

@@ -16,6 +16,8 @@ from physics.units import Array
 _DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
 _SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
 _LABEL_PX = 12
+_LEFT = 46.0  # width of the left axis [px]
+_ABOVE = 100.0  # marks are drawn over all curves
 
 
 def _same(before: Array, now: Array) -> bool:
@@ -30,6 +32,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         super().__init__(parent)
         self._theme = theme
         self._ranges: tuple[tuple[float, float], tuple[float, float]] | None = None
+        self._names: tuple[tuple[tuple[float, str], ...], ...] = ((), ())
         self._curves: dict[str, pg.PlotCurveItem] = {}
         self._marks: dict[str, pg.ScatterPlotItem] = {}
         self._labels: dict[str, QGraphicsSimpleTextItem] = {}
@@ -49,7 +52,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             axis.setStyle(tickFont=chart_font(11, hinted=True), hideOverlappingLabels=True)
             axis.enableAutoSIPrefix(False)
             axis.setTickDensity(1.6)
-        item.getAxis("left").setWidth(46)
+        item.getAxis("left").setWidth(_LEFT)
         item.getAxis("bottom").setHeight(36)
         self.setMinimumSize(180, 130)
         self.scene().sigMouseClicked.connect(self._clicked)
@@ -59,14 +62,25 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         previous, self._spec = self._spec, spec
         if previous is None or previous.x_label != spec.x_label:
             self._label_axes(spec)
+        if (spec.x_names, spec.y_names) != self._names:
+            self._names = (spec.x_names, spec.y_names)
+            for name, names in (("bottom", spec.x_names), ("left", spec.y_names)):
+                self.getPlotItem().getAxis(name).setTicks([names] if names else None)
+            self._fit_left_axis(spec)
         if self._ranges != (spec.x_range, spec.y_range):
             self._ranges = (spec.x_range, spec.y_range)
             self._show_all()
-        for series in spec.series:
-            self._show_series(series)
+        for at, series in enumerate(spec.series):
+            self._show_series(series, at)
         for mark in spec.marks:
             self._show_mark(mark)
         self._hide_missing(spec)
+
+    def _fit_left_axis(self, spec: PlotSpec) -> None:
+        """Numbers take the same room in all plots; names take what they need."""
+        metrics = QFontMetricsF(chart_font(11, hinted=True))
+        widest = max((metrics.horizontalAdvance(text) for _, text in spec.y_names), default=0.0)
+        self.getPlotItem().getAxis("left").setWidth(max(_LEFT, widest + (12 if not spec.y_label else 28)))
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Name the axes in full where there is room."""
@@ -90,16 +104,35 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             axis.setLabel(text, **style)
             axis.resizeEvent()  # the label is centred by its width of then only when the axis is resized
 
-    def _show_series(self, series: Series) -> None:
+    def _show_series(self, series: Series, at: int) -> None:
         curve = self._curves.get(series.key)
         if curve is None:
-            curve = pg.PlotCurveItem(antialias=True, pen=self._pen(series))
+            curve = pg.PlotDataItem if series.markers else pg.PlotCurveItem
+            curve = curve(antialias=True)
             self._curves[series.key] = curve
+            self._colour_series(series, curve)
             self.addItem(curve, ignoreBounds=True)
         x, y = curve.getData()
         if x is None or not (_same(x, series.x) and _same(y, series.y)):
-            curve.setData(series.x, series.y)
+            curve.setData(series.x, series.y, connect="finite" if np.isnan(series.y).any() else "all")
+        if curve.zValue() != at:  # a later one is drawn over an earlier one, whichever came first to the plot
+            curve.setZValue(at)
         curve.setVisible(True)
+
+    def _colour_series(self, series: Series, curve: pg.PlotCurveItem) -> None:
+        if series.filled:
+            tone = self._theme.palette.tones[series.role]
+            curve.setFillLevel(0.0)
+            curve.setBrush(pg.mkBrush(tone.fill))
+            curve.setPen(pg.mkPen(None))
+            return
+        curve.setPen(self._pen(series))
+        if series.markers:
+            ink = self._theme.palette.tones[series.role].ink
+            curve.setSymbol("o")
+            curve.setSymbolSize(6)
+            curve.setSymbolPen(pg.mkPen(None))
+            curve.setSymbolBrush(pg.mkBrush(ink))
 
     def _pen(self, series: Series) -> QPen:
         pen = QPen(QColor(self._theme.palette.tones[series.role].ink), 2.0, _DASHES[series.dash])
@@ -115,6 +148,8 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             font = QFont(chart_font(_LABEL_PX, bold=True, hinted=True))
             label.setFont(font)
             self._marks[mark.key], self._labels[mark.key] = dot, label
+            dot.setZValue(_ABOVE)
+            label.setZValue(_ABOVE)
             self.addItem(dot, ignoreBounds=True)
             self.getViewBox().addItem(label, ignoreBounds=True)
             self._colour_mark(mark, dot, label)
@@ -128,6 +163,8 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         shift = {
             "n": (-box.width() / 2, above - 2),
             "s": (-box.width() / 2, below + 3),
+            "e": (right, -box.height() / 2),
+            "w": (left, -box.height() / 2),
             "ne": (right, above),
             "nw": (left, above),
             "se": (right, below),
@@ -167,7 +204,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             return
         self._label_axes(self._spec)
         for series in self._spec.series:
-            self._curves[series.key].setPen(self._pen(series))
+            self._colour_series(series, self._curves[series.key])
         for mark in self._spec.marks:
             self._colour_mark(mark, self._marks[mark.key], self._labels[mark.key])
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from html import escape
 from typing import TYPE_CHECKING
 
-from PySide6.QtGui import QColor
+from PySide6.QtGui import QColor, QResizeEvent
 from PySide6.QtWidgets import QLabel, QSizePolicy, QVBoxLayout, QWidget
 
 from app.figures.spec import PlotSpec
@@ -35,6 +35,7 @@ class PlotView(QWidget):
         for label in (self.head, self.key):
             label.setMinimumHeight(label.fontMetrics().height() + 2)
             label.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
+        self.key.setWordWrap(True)
         self._column = QVBoxLayout(self)
         self._column.setContentsMargins(8, 4, 8, 4)
         self._column.setSpacing(0)
@@ -59,11 +60,13 @@ class PlotView(QWidget):
                 self._canvas.show_spec(self._spec)
         return self._canvas
 
-    def show_spec(self, spec: PlotSpec | None) -> None:
-        """Show a plot, or nothing."""
+    def show_spec(self, spec: PlotSpec | None, why: str = "") -> None:
+        """Show a plot, or the sentence why there is none."""
         previous, self._spec = self._spec, spec
         self.head.mark_stale(spec is not None and bool(spec.stale))
-        self.key.setVisible(spec is not None)
+        if spec is None and self.key.text() != why:
+            self.key.setText(why)
+        self.key.setVisible(spec is not None or bool(why))
         if self._canvas is not None:
             self._canvas.setVisible(spec is not None)
             if spec is not None:
@@ -75,10 +78,24 @@ class PlotView(QWidget):
         """One line that names the curves by colour and stroke."""
         tones = self._theme.palette.tones
         parts = [
-            f'<span style="color:{tones[s.role].ink}">{_STROKES[s.dash]}</span>&nbsp;{escape(s.label)}'
+            f'<nobr><span style="color:{tones[s.role].fill if s.filled else tones[s.role].ink}">'
+            f"{'■' if s.filled else _STROKES[s.dash]}</span>&nbsp;{escape(s.label)}</nobr>"
             for s in spec.series
+            if s.label
         ]
-        self.key.setText("&nbsp;&nbsp; ".join(parts))
+        self.key.setText("&nbsp; ".join(parts))
+        self._fit_key()
+
+    def _fit_key(self) -> None:
+        """Give the key the lines that it needs, up to three."""
+        line = self.key.fontMetrics().height()
+        lines = self.key.heightForWidth(max(self.width() - 16, 1)) // line
+        self.key.setFixedHeight(min(max(lines, 1), 3) * line + 4)
+
+    def resizeEvent(self, event: QResizeEvent) -> None:
+        """Set the key anew for the width."""
+        super().resizeEvent(event)
+        self._fit_key()
 
     def _recolour(self) -> None:
         colours = self.palette()

@@ -82,7 +82,7 @@ class StacksPanel(QDialog):
         self.head = Heading("")
         about = QLabel(_ABOUT)
         about.setWordWrap(True)
-        self.bare, self.finished = _Row("Bare absorber", False), _Row("Finished cell", False)
+        self.bare, self.whole = _Row("Bare absorber", False), _Row("Finished cell", False)
         self.contacts: list[_Row] = []
         self._grid = QGridLayout()
         self._grid.setColumnStretch(0, 2)
@@ -108,7 +108,7 @@ class StacksPanel(QDialog):
         column.addStretch(1)
         column.addWidget(close)
         self.add.clicked.connect(self._add_contact)
-        for entry in self._entries((self.bare, self.finished)):
+        for entry in self._entries((self.bare, self.whole)):
             self._bind(entry)
         self._bind(self.ideality)
         self._lay_out()
@@ -135,7 +135,7 @@ class StacksPanel(QDialog):
             if self._grid.itemAtPosition(0, column) is None:
                 self._grid.addWidget(self._head(text), 0, column)
         at = 1
-        for row in (self.bare, *self.contacts, self.finished):
+        for row in (self.bare, *self.contacts, self.whole):
             self._grid.addWidget(row.name if row.contact else row.title, at, 0)
             self._grid.addWidget(row.value, at, 1)
             self._grid.addWidget(row.suns, at, 2)
@@ -202,7 +202,7 @@ class StacksPanel(QDialog):
             if ideality is not None and not 0.1 <= ideality <= 10.0:
                 raise NumberError("The ideality lies between 0.1 and 10; most stacks between 1 and 2.")
             contacts = tuple((row.name.text(), row.read()) for row in self.contacts)
-            stacks = StackReadings(self.bare.read(), contacts, self.finished.read(), ideality)
+            stacks = StackReadings(self.bare.read(), contacts, self.whole.read(), ideality)
         except NumberError as fault:
             self.message.setText(f"✕ {fault}")
         else:
@@ -228,7 +228,7 @@ class StacksPanel(QDialog):
         self.head.setText("" if cell is None else cell.name)
         self._set_contacts(len(given.contacts))
         self.bare.show_reading("", given.bare)
-        self.finished.show_reading("", given.finished)
+        self.whole.show_reading("", given.finished)
         for row, (name, reading) in zip(self.contacts, given.contacts, strict=True):
             row.show_reading(name, reading)
         text = self.ideality.text().strip()

@@ -8,11 +8,11 @@ from PySide6.QtCore import QEvent, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import QMainWindow, QSplitter, QTabWidget, QVBoxLayout, QWidget
 
-from app.figures.charts import eqe_plot_of, gap_plot_of, jv_plot_of, waterfall_of
-from app.figures.spec import PlotSpec
+from app.figures.all_plots import BESIDE, JV
+from app.figures.charts import waterfall_of
 from app.ledger_rows import ledger_rows
 from app.session.commands import RemoveCell
-from app.session.outcome import Outcome, Outcomes
+from app.session.outcome import Outcome, Outcomes, Picture
 from app.session.session import Session
 from app.wording import explain
 from app.workbench.actions import Actions
@@ -43,9 +43,9 @@ class Window(QMainWindow):
         self.shelf = Shelf(self.outcomes)
         self.inputs = InputsPanel(session, self.theme)
         self.waterfall = WaterfallView(self.theme)
-        self.jv_plot = PlotView("Current density against voltage", self.theme)
-        self.gap_plot = PlotView("Efficiency against the gap", self.theme)
-        self.eqe_plot = PlotView("External quantum efficiency", self.theme)
+        self.jv_plot = PlotView(JV.title, self.theme)
+        self.beside = {plot.key: PlotView(plot.title, self.theme) for plot in BESIDE}
+        self.gap_plot = self.beside["gap"]
         self.table = LedgerTable(self.theme)
         self.explanation = ExplainPanel(self.theme)
         self.notices = NoticeBar()
@@ -76,10 +76,11 @@ class Window(QMainWindow):
         plots.addWidget(self.jv_plot)
         self._tabs = QTabWidget()
         self._tabs.setDocumentMode(True)
-        self._tabs.addTab(self.gap_plot, "&Limits")
-        self._tabs.addTab(self.eqe_plot, "E&QE")
-        self._tabs.setTabVisible(1, False)
-        self._tabs.tabBar().setVisible(False)
+        self._tabs.setUsesScrollButtons(True)
+        self._tabs.tabBar().setExpanding(False)
+        for plot in BESIDE:
+            self._tabs.addTab(self.beside[plot.key], plot.tab)
+            self._tabs.setTabToolTip(self._tabs.count() - 1, plot.title)
         self._tabs.currentChanged.connect(lambda _: self._due.start())
         plots.addWidget(self._tabs)
         plots.setStretchFactor(0, 1)
@@ -148,22 +149,24 @@ class Window(QMainWindow):
         if picture is None:
             self.waterfall.show_spec(None, "", _EMPTY_SHELF if outcome.appraisal is None else _EMPTY_CELL)
             self.jv_plot.show_spec(None)
-            self.gap_plot.show_spec(None)
-            self._show_eqe(None)
+            self._show_beside(None, stale)
             return
         self.waterfall.show_spec(waterfall_of(picture, stale), self.session.state.line)
-        self.jv_plot.show_spec(jv_plot_of(picture, stale, captioned=False))
-        self.gap_plot.show_spec(gap_plot_of(picture, stale, captioned=False))
-        self._show_eqe(eqe_plot_of(picture, stale, captioned=False))
+        self.jv_plot.show_spec(JV.describe(picture, stale, captioned=False))
+        self._show_beside(picture, stale)
 
-    def _show_eqe(self, spec: PlotSpec | None) -> None:
-        """The plot of the EQE has a place of its own only where there is one."""
-        if self._tabs.isTabVisible(1) != (spec is not None):  # Qt lays the tabs out anew at each call
-            self._tabs.setTabVisible(1, spec is not None)
-            self._tabs.tabBar().setVisible(spec is not None)
-        if spec is not None and self._tabs.currentIndex() == 1:
-            _ = self.eqe_plot.canvas  # made on first need
-            self.eqe_plot.show_spec(spec)
+    def _show_beside(self, picture: Picture | None, stale: bool) -> None:
+        """Show the plot whose tab is up. A plot has a tab where the cell has its data."""
+        for at, plot in enumerate(BESIDE):
+            offered = picture is not None and plot.offered(picture)
+            if self._tabs.isTabVisible(at) != offered and at > 0:  # Qt lays the tabs out anew at each call
+                self._tabs.setTabVisible(at, offered)
+        plot = BESIDE[self._tabs.currentIndex()]
+        view = self.beside[plot.key]
+        spec = None if picture is None else plot.describe(picture, stale, captioned=False)
+        if spec is not None and plot is not BESIDE[0]:
+            _ = view.canvas  # made on first need
+        view.show_spec(spec, "" if picture is None else "The data do not suffice for this plot.")
 
     def _show_texts(self) -> None:
         state, outcome = self.session.state, self.outcomes.current()

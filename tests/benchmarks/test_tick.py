@@ -22,7 +22,8 @@ import numpy as np
 import pytest
 from PySide6.QtWidgets import QApplication, QHBoxLayout, QVBoxLayout, QWidget
 
-from app.figures.charts import gap_plot_of, jv_plot_of, waterfall_of
+from app.figures.charts import waterfall_of
+from app.figures.plots import gap_plot_of, jv_plot_of
 from app.figures.spec import PlotSpec, WaterfallSpec
 from app.session.commands import SetValue
 from app.workbench.plot_view import PlotView

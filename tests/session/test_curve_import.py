@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from app.figures.charts import eqe_plot_of
+from app.figures.curve_plots import eqe_plot_of
 from app.files.measured import apply, guess, read_measured
 from app.files.table_error import TableError
 from app.session.appraisal import appraise

@@ -9,7 +9,9 @@ import pytest
 from PySide6.QtGui import QAction
 from PySide6.QtWidgets import QComboBox
 
-from app.figures.charts import eqe_plot_of, jv_plot_of
+from app.figures.all_plots import BESIDE
+from app.figures.curve_plots import eqe_plot_of
+from app.figures.plots import jv_plot_of
 from app.workbench.import_panel import ImportPanel
 from app.workbench.window import Window
 from physics.diode import Diode
@@ -69,16 +71,17 @@ def test_curves_make_a_ledger_out_of_nothing(empty_window: Window, tmp_path: Pat
 
 def test_the_plots_show_what_was_measured(empty_window: Window, tmp_path: Path) -> None:
     window = empty_window
-    assert not window._tabs.isTabVisible(1)
+    eqe_tab = [plot.key for plot in BESIDE].index("eqe")
+    assert not window._tabs.isTabVisible(eqe_tab)
     _open(window, _write_eqe(tmp_path / "eqe.txt"))
     _open(window, _write_sweep(tmp_path / "sweep.txt"))
     settle()
-    assert window._tabs.isTabVisible(1)
-    window._tabs.setCurrentIndex(1)
+    assert window._tabs.isTabVisible(eqe_tab)
+    window._tabs.setCurrentIndex(eqe_tab)
     settle()
     picture = window.outcomes.current().picture
     assert picture is not None
-    shown = window.eqe_plot._spec
+    shown = window.beside["eqe"]._spec
     assert shown is not None
     assert [series.key for series in shown.series] == ["eqe", "slope", "tail"]
     assert shown.marks[0].x == pytest.approx(1.6, abs=0.0005)

@@ -15,7 +15,7 @@ from app.ledger_rows import ledger_csv
 from app.session.state import CellEntry
 from app.wording import explain
 from app.workbench import start
-from app.workbench.export_panel import CHARTS, ExportPanel
+from app.workbench.export_panel import ExportPanel
 from app.workbench.window import Window
 from physics.lines import LINES
 
@@ -265,7 +265,7 @@ def test_the_clipboard_holds_a_slide(window: Window) -> None:
     assert (image.width(), image.height()) == (1920, 1080)
 
 
-@pytest.mark.parametrize("chart", CHARTS)
+@pytest.mark.parametrize("chart", ["waterfall", "jv", "gap", "spectrum"])
 @pytest.mark.parametrize("preset", PRESETS)
 def test_every_picture_in_every_size(window: Window, tmp_path: Path, chart: str, preset: str) -> None:
     panel = ExportPanel(window.outcomes, window)
