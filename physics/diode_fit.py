@@ -205,8 +205,9 @@ def _result(model: DiodeCurve, v: Array, j: Array, used: Mask, vt: float, messag
     spread = inverse @ inverse.T * noise**2 * freedom / (freedom - 2.0)
     free = model.parameters + inverse @ left  # what the data alone would give, where an end holds a resistance
     by_curve = change(model, vt)
-    covariance = by_curve @ spread @ by_curve.T
-    parameters = stated_parameters(model, free, covariance, vt)
+    with np.errstate(over="ignore", invalid="ignore"):  # where J0 is next to nothing; then it cannot be told
+        covariance = by_curve @ spread @ by_curve.T
+        parameters = stated_parameters(model, free, covariance, vt)
     notes = [message] if message else []
     notes += _remarks(left, int(np.sum(~used)), v.size, 1e-12 * float(np.max(np.abs(j))))
     return DiodeFit(parameters, covariance, v, residuals, used, scale, True, " ".join(notes), model)

@@ -77,6 +77,7 @@ class StacksPanel(QDialog):
         super().__init__(parent)
         self._session = session
         self._theme = theme
+        self._shown: tuple[int | None, StackReadings] | None = None
         self.setWindowTitle("Partial stacks")
         self.setModal(False)
         self.head = Heading("")
@@ -178,9 +179,11 @@ class StacksPanel(QDialog):
         cell = self._session.state.cell
         return NO_STACKS if cell is None else cell.stacks
 
-    def _do(self, stacks: StackReadings) -> None:
+    def _do(self, stacks: StackReadings, typed: bool = False) -> None:
         cell = self._session.state.cell
         if cell is not None:
+            if typed:
+                self._shown = (cell.ident, stacks)
             self._session.do(SetStacks(cell.ident, stacks))
 
     def _add_contact(self) -> None:
@@ -206,7 +209,7 @@ class StacksPanel(QDialog):
         except NumberError as fault:
             self.message.setText(f"✕ {fault}")
         else:
-            self._do(stacks)
+            self._do(stacks, typed=True)
             self._tell("")
 
     def _tell(self, sentence: str) -> None:
@@ -215,6 +218,8 @@ class StacksPanel(QDialog):
 
     def refresh(self, outcome: Outcome) -> None:
         """Show what the session holds, and what is wrong with it."""
+        cell = self._session.state.cell
+        self.head.setText("" if cell is None else cell.name)
         self.show_state()
         appraisal = outcome.appraisal
         problem = None if appraisal is None else appraisal.about("stacks")
@@ -224,8 +229,12 @@ class StacksPanel(QDialog):
     def show_state(self) -> None:
         """Show what the session holds."""
         cell, given = self._session.state.cell, self._given
+        shown = (None if cell is None else cell.ident, given)
+        if shown == self._shown:  # what is being typed stays, be it a number yet or not
+            return
+        self._shown = shown
+        self.message.clear()
         self.setEnabled(cell is not None)
-        self.head.setText("" if cell is None else cell.name)
         self._set_contacts(len(given.contacts))
         self.bare.show_reading("", given.bare)
         self.whole.show_reading("", given.finished)
