@@ -16,10 +16,11 @@ from app.files.quoting import quote
 from app.files.table_error import TableError
 from app.session.fields import FIELD_BY_COLUMN, FIELDS
 
-NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE = "name", "group", "spectrum", "reference", "jv_file", "eqe_file"
+NAME, GROUP, SPECTRUM, REFERENCE = "name", "group", "spectrum", "reference"
+JV_FILE, EQE_FILE, SERIES_FILE = "jv_file", "eqe_file", "series_file"
 UNCERTAINTY = "u_"
 STEP = "step"
-TEXT_COLUMNS = (NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE)
+TEXT_COLUMNS = (NAME, GROUP, SPECTRUM, REFERENCE, JV_FILE, EQE_FILE, SERIES_FILE)
 KNOWN = frozenset((*TEXT_COLUMNS, *FIELD_BY_COLUMN))
 REQUIRED = (NAME, *(field.column for field in FIELDS if field.required))
 

@@ -5,14 +5,25 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import replace
 from pathlib import Path
+from typing import TYPE_CHECKING
 
-from app.cell_columns import EQE_FILE, JV_FILE
+from app.cell_columns import EQE_FILE, JV_FILE, SERIES_FILE
 from app.files.table_error import TableError
 from app.files.tables import load_bytes
 from app.session.fields import FIELD_BY_KEY
 from app.session.state import CellEntry
 
-CURVE_COLUMNS = (EQE_FILE, JV_FILE)  # the EQE first: a sweep needs nothing of it, but the gap stands before the figures
+if TYPE_CHECKING:
+    from app.files.measured import Kind
+
+#: In the order in which they are read: a series needs the Jsc of the sweep.
+CURVE_COLUMNS = (EQE_FILE, JV_FILE, SERIES_FILE)
+_KINDS: Mapping[str, Kind] = {EQE_FILE: "eqe", JV_FILE: "jv", SERIES_FILE: "intensity"}
+
+
+def names_curves(cells: Mapping[str, str]) -> bool:
+    """Whether a row names a curve file."""
+    return any(cells.get(column, "").strip() for column in CURVE_COLUMNS)
 
 
 def with_curves(
@@ -49,7 +60,7 @@ def with_curves(
         name = cells[column].strip()
         try:
             text = read_measured(load_bytes(folder / name), name)
-            reading = guess(text, "eqe" if column == EQE_FILE else "jv")
+            reading = guess(text, _KINDS[column])
             command, _ = taken(apply(text, reading), entry, name)
         except TableError as fault:
             faults.append((column, str(fault)))
@@ -62,3 +73,23 @@ def with_curves(
         if command.curves is not None:
             entry = replace(entry, curves=command.curves)
     return entry, faults, doubts
+
+
+def merged(now: CellEntry, before: CellEntry, after: CellEntry) -> CellEntry:
+    """What a cell becomes when its curves arrive: `after` where it is as it was `before`, else as the user has it now.
+
+    Parameters
+    ----------
+    now : CellEntry
+        The cell as it is.
+    before, after : CellEntry
+        As it was when its files were asked for, and the same with their curves (`with_curves`).
+    """
+    fresh = {
+        key: value
+        for key, value in after.values.items()
+        if value != before.values[key] and now.values[key] == before.values[key]
+    }
+    sources = {key: source for key, source in after.sources.items() if key in fresh}
+    filled = now.with_figures(fresh, sources)
+    return replace(filled, curves=after.curves) if now.curves is before.curves else filled

@@ -4,11 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from pathlib import Path
 from types import MappingProxyType
 
 from app.cell_columns import check_header, not_available
-from app.cell_curves import with_curves
 from app.files.numbers import NumberError
 from app.files.table_output import write_table
 from app.files.tables import Table
@@ -69,9 +67,29 @@ def entry_of(row: ReadRow, note: str = "") -> CellEntry:
     return CellEntry(0, row.name, row.group, row.spectrum, row.values, note)
 
 
-def entries_from(
-    table: Table, source: str, folder: Path = Path()
-) -> tuple[tuple[CellEntry, ...], tuple[str, ...]]:
+@dataclass(frozen=True)
+class Shelf:
+    """The cells of a table, their curve files not yet read.
+
+    Parameters
+    ----------
+    entries : tuple of CellEntry
+        One for each row with a name. Numbers that could not be read stay as typed, to be mended in the window.
+    rows : tuple of mapping
+        Text of each cell's row by column name.
+    lines : tuple of int
+        Line of each in the file.
+    left_out : tuple of str
+        One sentence for each row, or part of a row, that could not be taken.
+    """
+
+    entries: tuple[CellEntry, ...]
+    rows: tuple[Mapping[str, str], ...]
+    lines: tuple[int, ...]
+    left_out: tuple[str, ...]
+
+
+def shelf_of(table: Table, source: str) -> Shelf:
     """Shelf entries of a table of cells.
 
     Parameters
@@ -80,15 +98,6 @@ def entries_from(
         As read from a file. A column "note" (or "story") becomes the note.
     source : str
         What to call the table.
-    folder : Path
-        Folder that the names of curve files start from.
-
-    Returns
-    -------
-    entries : tuple of CellEntry
-        One for each row with a name. Numbers that could not be read stay as typed, to be mended in the window.
-    left_out : tuple of str
-        One sentence for each row, or part of a row, that could not be taken.
 
     Raises
     ------
@@ -96,7 +105,7 @@ def entries_from(
         When a column is missing or looks like a known quantity in another spelling or unit.
     """
     check_header(table.columns, source)
-    entries, left_out = [], []
+    entries, rows, lines, left_out = [], [], [], []
     for index, (row, line) in enumerate(zip(table.rows, table.line_numbers, strict=True)):
         fault = table.row_problems.get(index, "")
         cells = dict(zip(table.columns, row, strict=True))
@@ -105,15 +114,16 @@ def entries_from(
             fault = "the name is missing."
         if fault:
             left_out.append(f"Line {line}: {fault}")
-        else:
-            entry, faults, doubts = with_curves(entry_of(read, note_in(cells)), cells, folder)
-            entries.append(entry)
-            left_out += [f"Line {line}: {sentence}" for _, sentence in (*not_available(cells), *faults, *doubts)]
-    return tuple(entries), tuple(left_out)
+            continue
+        entries.append(entry_of(read, note_in(cells)))
+        rows.append(cells)
+        lines.append(line)
+        left_out += [f"Line {line}: {sentence}" for _, sentence in not_available(cells)]
+    return Shelf(tuple(entries), tuple(rows), tuple(lines), tuple(left_out))
 
 
 def cell_table(cells: Sequence[CellEntry]) -> str:
-    """The cells of a shelf as a table that `entries_from` and the headless command read back."""
+    """The cells of a shelf as a table that `shelf_of` and the headless command read back."""
     columns = ("name", "group", *(field.column for field in FIELDS), "spectrum", "note")
     rows = [
         (cell.name, cell.group, *(_written(cell.values[field.key]) for field in FIELDS), cell.spectrum, cell.note)

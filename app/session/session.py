@@ -6,7 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 from app.session.commands import Command
-from app.session.state import State
+from app.session.state import CellEntry, State
 
 _DEEPEST = 1000  # steps of undo that are kept; states share all they have in common, so a step is small
 
@@ -59,6 +59,25 @@ class Session:
         self._gesture_open = True
         self._undone.clear()
         self._become(after)
+
+    def amend(self, ident: int, change: Callable[[CellEntry], CellEntry]) -> None:
+        """Change a cell now and in all steps that can be undone or done again, as if it had always been so.
+
+        For what was asked for before and arrives only now. The change must depend on the cell alone.
+        """
+        known: dict[int, tuple[CellEntry, CellEntry]] = {}
+
+        def amended(state: State) -> State:
+            for cell in state.cells:
+                if cell.ident == ident:
+                    if id(cell) not in known:
+                        known[id(cell)] = (cell, change(cell))
+                    return state.with_cell(known[id(cell)][1])
+            return state
+
+        for steps in (self._done, self._undone):
+            steps[:] = [replace(step, before=amended(step.before), after=amended(step.after)) for step in steps]
+        self._become(amended(self._state))
 
     def settle(self) -> None:
         """End a gesture (a slider drag, a visit to a field): what follows is a new step of undo."""

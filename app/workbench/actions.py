@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -12,7 +12,8 @@ from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
 from PySide6.QtWidgets import QComboBox, QFileDialog, QLabel, QMenu, QToolBar
 
 from app.cell_columns import KNOWN
-from app.cells import cell_table, entries_from
+from app.cell_curves import merged, names_curves
+from app.cells import cell_table, shelf_of
 from app.figures.charts import waterfall_of
 from app.files.file_names import safe_stem
 from app.files.table_error import TableError
@@ -23,6 +24,7 @@ from app.ledger_rows import ledger_csv, ledger_tsv
 from app.session.commands import AddCells, RemoveCell, SetChoices, SetFigures
 from app.session.outcome import Outcome
 from app.session.state import CellEntry, Choices, Value
+from app.workbench.curve_loader import Arrived, CurveLoader, Wanted
 from app.workbench.number_field import ignore_wheel
 
 if TYPE_CHECKING:
@@ -33,6 +35,9 @@ if TYPE_CHECKING:
     from app.workbench.import_panel import ImportPanel
     from app.workbench.stacks_panel import StacksPanel
     from app.workbench.window import Window
+
+
+_WORTH_TELLING = 5  # fewer cells than this have their curves before one has read how many are to come
 
 
 class Actions(QObject):
@@ -46,6 +51,10 @@ class Actions(QObject):
         self._help: HelpPanel | None = None
         self._import: ImportPanel | None = None
         self._stacks: StacksPanel | None = None
+        self._loader: CurveLoader | None = None
+        self._wanted: list[Wanted] = []  # cells whose curve files are yet to be read
+        self._to_come = 0
+        self._doubts: list[str] = []  # about curve files that have been read
         self._waiting: list[tuple[MeasuredText, Reading]] = []
         self._choices: dict[str, Reading] = {}  # how files of a shape were read the last time
         self._needs_picture: list[QAction] = []
@@ -170,6 +179,8 @@ class Actions(QObject):
         for panel in (self._export, self._help, self._import, self._stacks):
             if panel is not None:
                 panel.close()
+        if self._loader is not None:
+            self._loader.stop()
 
     # ------------------------------------------------------------ doing
 
@@ -281,14 +292,51 @@ class Actions(QObject):
             self._say("No gap can be read off this EQE.")
 
     def _take_cells(self, data: bytes, path: Path) -> None:
-        entries, left_out = entries_from(read_table(data, path.name), path.name, path.parent)
-        if entries:
-            self._session.do(AddCells(entries, "opening of a table"))
-        sentence = f"{len(entries)} cell{'' if len(entries) == 1 else 's'} taken from {path.name}."
-        if left_out:
-            more = f" (and {len(left_out) - 3} more)" if len(left_out) > 3 else ""
-            sentence = f"{sentence} Left out: {' '.join(left_out[:3])}{more}"
-        self._say(sentence, lasting=bool(left_out))
+        shelf = shelf_of(read_table(data, path.name), path.name)
+        count = len(shelf.entries)
+        if count:
+            first = self._session.state.next_ident
+            self._session.do(AddCells(shelf.entries, "opening of a table"))
+            cells = {cell.ident: cell for cell in self._session.state.cells}
+            self._wanted += [
+                Wanted(cells[first + at], row, line, path.parent)
+                for at, (row, line) in enumerate(zip(shelf.rows, shelf.lines, strict=True))
+                if names_curves(row)
+            ]
+        sentence = f"{count} cell{'' if count == 1 else 's'} taken from {path.name}."
+        if shelf.left_out:
+            sentence = f"{sentence} Left out: {_some(shelf.left_out)}"
+        self._say(sentence, lasting=bool(shelf.left_out))
+        if self._window.complete:
+            self.load_curves()
+
+    def leave_curves(self) -> None:
+        """Do without the curve files that tables opened so far have named."""
+        self._wanted.clear()
+
+    def load_curves(self) -> None:
+        """Read the curve files that tables opened so far have named, beside the window."""
+        wanted, self._wanted = self._wanted, []
+        if not wanted:
+            return
+        if self._loader is None:
+            self._loader = CurveLoader(self)
+            self._loader.arrived.connect(self._take_arrived)
+            self._loader.finished.connect(self._tell_arrived)
+        self._to_come += len(wanted)
+        self._loader.load(wanted)
+
+    def _take_arrived(self, arrived: Arrived) -> None:
+        self._to_come -= 1
+        self._doubts += arrived.sentences
+        self._session.amend(arrived.before.ident, lambda now: merged(now, arrived.before, arrived.after))
+        if self._to_come >= _WORTH_TELLING:
+            self._say(f"Reading curves: {self._to_come} cells to come.")
+
+    def _tell_arrived(self) -> None:
+        doubts, self._doubts = self._doubts, []
+        if doubts:
+            self._say(f"Curves read. Please check: {_some(doubts)}", lasting=True)
 
     def _ask_save(self, title: str, name: str, text: Callable[[], str]) -> None:
         chosen, _ = QFileDialog.getSaveFileName(self._window, title, name, "Comma-separated table (*.csv)")
@@ -357,6 +405,12 @@ class Actions(QObject):
             self._help = HelpPanel(self._window)
         self._help.show()
         self._help.raise_()
+
+
+def _some(sentences: Sequence[str]) -> str:
+    """The first three of some sentences, and how many more there are."""
+    more = f" (and {len(sentences) - 3} more)" if len(sentences) > 3 else ""
+    return f"{' '.join(sentences[:3])}{more}"
 
 
 def _holds_cells(data: bytes, source: str) -> bool:

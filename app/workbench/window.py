@@ -38,6 +38,7 @@ class Window(QMainWindow):
     def __init__(self, session: Session) -> None:
         super().__init__()
         self.session = session
+        self.complete = False  # whether it has shown itself with all its parts
         self.outcomes = Outcomes(session)
         self.theme = Theme(self)
         self.shelf = Shelf(self.outcomes)
@@ -141,8 +142,10 @@ class Window(QMainWindow):
 
     def _complete(self) -> None:
         """The window is on the screen: bring what was not worth waiting for."""
+        self.complete = True
         for plot in (self.jv_plot, self.gap_plot):
             plot.canvas.update()
+        self.actions_.load_curves()
 
     def _show_charts(self, outcome: Outcome) -> None:
         picture, stale = outcome.picture, outcome.stale

@@ -7,7 +7,8 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from app.cells import entries_from
+from app.cell_curves import with_curves
+from app.cells import shelf_of
 from app.files.tables import load_table
 from app.session.appraisal import appraise
 from app.session.state import Choices
@@ -60,8 +61,10 @@ def test_the_window_makes_the_same_ledger_of_them(command: Command) -> None:
     _write_curves(command.home)
     done = command(f"{HEADER}\nall,,,,,curves/jv.csv,curves/eqe.csv\n")
     table = command.home / "cells.csv"
-    (entry,), left_out = entries_from(load_table(table), table.name, table.parent)
-    assert left_out == ()
+    shelf = shelf_of(load_table(table), table.name)
+    assert shelf.left_out == ()
+    entry, faults, doubts = with_curves(shelf.entries[0], shelf.rows[0], table.parent)
+    assert (faults, doubts) == ([], [])
     ledger = appraise(entry, Choices()).ledger
     assert ledger is not None
     mine = [float(e.loss) for e in ledger.entries if e.present]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import random
+import re
 import signal
 import subprocess
 import sys
@@ -16,7 +17,8 @@ import pytest
 from app.batch import command as command_module
 from tests.batch.command_line import GOOD, HEADER, ROOT, Command, in_process_of_its_own, rows_of
 
-DEMO = (ROOT / "resources" / "demo_cells.csv").read_bytes()
+#: The figures alone: a fit for each of hundreds of tables would take minutes.
+DEMO = re.sub(rb"demo/[\w.]+", b"", (ROOT / "resources" / "demo_cells.csv").read_bytes())
 _SNIPPETS = [
     b"", b"NaN", b"inf", b"-inf", b"1e308", b"1e-308", b"5e-324", b"-0", b"0", b"-1", b"1,5", b"1.234,5", b"1e", b'"',
     b'""', b"'", b"=1+1", b"\0", b"\xff", b"\xef\xbb\xbf", b"\r", b"\n", b"\r\n", b"\t", b";", b",", b"#", b"\x1a",

@@ -15,7 +15,8 @@ from hypothesis import strategies as st
 
 from app.batch.command import run
 from app.batch.portions import RESULTS, portions_of
-from app.cells import entries_from
+from app.cell_curves import with_curves
+from app.cells import shelf_of
 from app.files.tables import load_table
 from app.session.appraisal import appraise
 from app.session.light import light_named
@@ -106,7 +107,8 @@ def test_same_as_the_window(command: Command, attribution: Attribution) -> None:
     """
     choices = Choices(attribution=attribution)
     done = command(DEMO, "--attribution", attribution)
-    entries, _ = entries_from(load_table(DEMO), DEMO.name)
+    shelf = shelf_of(load_table(DEMO), DEMO.name)
+    entries = [with_curves(entry, row, DEMO.parent)[0] for entry, row in zip(shelf.entries, shelf.rows, strict=True)]
     for entry, summary in zip(entries, done.rows("summary"), strict=True):
         picture = picture_of(appraise(entry, choices), choices)
         assert picture is not None
@@ -271,7 +273,7 @@ def test_numbers_read_back_bit_for_bit(
         present = portion.form[0] >= 0
         assert [float(row["loss_mW_cm2"]) for row in written] == portion.loss[0, present].tolist()
         assert [float(summary[column]) for column in RESULTS] == portion.results[0].tolist()
-        (entry,), _ = entries_from(load_table(cells), cells.name)
+        (entry,) = shelf_of(load_table(cells), cells.name).entries
         ledger = appraise(entry, Choices()).ledger
         assert ledger is not None
         # numpy's exp for arrays and for single numbers may differ by an ulp, which J0 ~ exp(-Eg/kT) passes on.

@@ -80,6 +80,7 @@ def window(qapp: QApplication) -> Iterator[Window]:
     application([])
     qapp.setStyle("Fusion")
     made = make_window(["demo"])
+    made.actions_.leave_curves()
     made.resize(1280, 800)
     made.show()
     _settle()

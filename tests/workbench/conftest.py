@@ -32,9 +32,30 @@ def press(entry: QLineEdit, text: str) -> None:
 
 @pytest.fixture
 def window(qapp: QApplication) -> Iterator[Window]:
+    """A window on the demo cells by their figures alone."""
     application([])
     qapp.setStyle("Fusion")
+    made = make_window(["demo"])
+    made.actions_.leave_curves()
+    yield from _shown(made)
+
+
+@pytest.fixture
+def demo_window(qapp: QApplication) -> Iterator[Window]:
+    """A window on the demo cells whose curves come as they do for a user."""
+    application([])
     yield from _shown(make_window(["demo"]))
+
+
+@pytest.fixture
+def unshown_demo(qapp: QApplication) -> Iterator[Window]:
+    """The same before it shows itself."""
+    application([])
+    made = make_window(["demo"])
+    yield made
+    made.close()
+    made.deleteLater()
+    settle()
 
 
 @pytest.fixture

@@ -8,7 +8,7 @@ from PySide6.QtGui import QColor, QDropEvent, QGuiApplication, QPalette
 from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QAbstractButton, QApplication, QComboBox, QLineEdit, QSlider, QWidget
 
-from app.cells import cell_table, entries_from
+from app.cells import cell_table, shelf_of
 from app.figures.presets import PRESETS
 from app.files.tables import read_table
 from app.ledger_rows import ledger_csv
@@ -235,7 +235,8 @@ def test_the_shelf_is_saved_and_read_back(window: Window, tmp_path: Path) -> Non
     cells = window.session.state.cells
     window.actions_.save_text(tmp_path / "cells.csv", cell_table(cells))
     table = read_table((tmp_path / "cells.csv").read_bytes(), "cells.csv")
-    back, left_out = entries_from(table, "cells.csv")
+    shelf = shelf_of(table, "cells.csv")
+    back, left_out = shelf.entries, shelf.left_out
     assert left_out == ()
     for mine, theirs in zip(cells, back, strict=True):
         assert (mine.name, mine.group, mine.note, mine.spectrum) == (
