@@ -11,7 +11,7 @@ from physics.quantum import Curve, Tail
 from physics.units import EV_NM, Array, thermal_voltage
 
 _LEAST_POINTS = 8
-_SPLINE_POINTS = 100  # from twice as many on, points are averaged in groups: the spline takes time with their number
+_SPLINE_POINTS = 60  # from twice as many on, points are averaged in groups: the spline takes time with their number
 _GRID = 4001  # points of the derivative over the edge: steps far below a meV
 _WINDOW = 0.35  # [eV] beyond the energy where half the maximum is reached, the edge is over
 _OPEN = 0.1  # an EQE that has not fallen below this share of its maximum has not shown its edge

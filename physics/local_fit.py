@@ -13,6 +13,7 @@ from functools import cached_property
 
 import numpy as np
 from numpy.polynomial import Legendre
+from numpy.polynomial.legendre import legvander
 
 from physics.diode_curve import DiodeCurve
 from physics.sweep_noise import by_differences, outlying
@@ -126,9 +127,19 @@ class LocalData:
     background: DiodeCurve | None
 
     @cached_property
+    def expected(self) -> Array:
+        """The background at the points [mA cm⁻²], zero where there is none."""
+        return np.zeros(self.voltage.size) if self.background is None else self.background.current(self.voltage)
+
+    @cached_property
     def rest(self) -> Array:
         """The currents without the background [mA cm⁻²]."""
-        return self.current if self.background is None else self.current - self.background.current(self.voltage)
+        return self.current - self.expected
+
+    @cached_property
+    def wrong(self) -> Array:
+        """The error of the background at the points [mA cm⁻²], zero where none is seen."""
+        return np.zeros(self.voltage.size) if self.error is None else self.error(self.voltage)
 
     @cached_property
     def link(self) -> Array:
@@ -147,10 +158,11 @@ class LocalData:
         rest, order = self.rest, min(_BENT, np.unique(self.voltage).size // 4)
         if self.background is None:
             return None
-        smooth = Legendre.fit(self.voltage, rest, order)
-        seen = smooth(self.voltage)
+        ends = [float(self.voltage[0]), float(self.voltage[-1])]
+        q, r = orthogonal(legvander(2.0 * (self.voltage - ends[0]) / (ends[1] - ends[0]) - 1.0, order))
+        seen = q @ (q.T @ rest)
         explained, left = float(seen @ seen) / (order + 1), float(rest @ rest - seen @ seen) / (rest.size - order - 1)
-        return smooth if explained > _PATTERN * left else None
+        return Legendre(np.linalg.solve(r, q.T @ rest), domain=ends) if explained > _PATTERN * left else None
 
     def without_outliers(self) -> LocalData:
         """The same without single points that stand far out from their neighbours."""
@@ -188,7 +200,7 @@ class LocalData:
         if window.half <= 0 or orders < 1:
             return []
         rest = self.rest[window.index]
-        q, r = np.linalg.qr(window.design(self.voltage, orders))
+        q, r = orthogonal(window.design(self.voltage, orders))
         freedom = size - 1 - np.arange(orders + 1)
         squares = np.maximum(float(rest @ rest) - np.cumsum((q.T @ rest) ** 2), 0.0)
         tiny = 1e-32 * float(rest @ rest) + 1e-300  # the square of the rounding, where there is no noise at all
@@ -204,13 +216,13 @@ class LocalData:
         x = (centre - window.middle) / window.half
         weights = np.linalg.solve(r.T, _powers(x, r.shape[0] - 1, derivative) / window.half**derivative)
         costs = np.cumsum(weights**2) * spread
-        v, here = self.voltage[window.index], np.array([centre])
+        here = np.array([centre])
         if self.background is not None:
             exact = self.background.derivatives(here)[0] if derivative else self.background.current(here)
-            taken = np.cumsum(weights * (q.T @ self.background.current(v)))
+            taken = np.cumsum(weights * (q.T @ self.expected[window.index]))
             costs = costs + (_TRUST * (taken - exact)) ** 2
         if self.error is not None:
-            taken = np.cumsum(weights * (q.T @ self.error(v)))
+            taken = np.cumsum(weights * (q.T @ self.wrong[window.index]))
             costs = costs + (taken - self.error.deriv(derivative)(here)) ** 2
         return costs
 
@@ -230,7 +242,7 @@ class LocalData:
 
     def _fitted(self, plan: _Plan) -> LocalFit:
         window, rest = plan.window, self.rest[plan.window.index]
-        q, r = np.linalg.qr(window.design(self.voltage, plan.order))
+        q, r = orthogonal(window.design(self.voltage, plan.order))
         response = np.linalg.solve(r, q.T)
         coefficients = response @ rest
         left = rest - q @ (q.T @ rest)
@@ -262,6 +274,23 @@ class _Plan:
     order: int
     costs: tuple[float, ...]
     fair: bool
+
+
+def orthogonal(design: Array) -> tuple[Array, Array]:
+    """Q and R of a tall matrix, as numpy.linalg.qr gives them but for signs, at a tenth of the time.
+
+    Cholesky's factor of the normal matrix, and the same once more on what it leaves: to rounding where the condition of
+    the matrix is below 1e7 (Y. Yamamoto et al., Electron. Trans. Numer. Anal. 44 (2015) 306, from memory). The powers
+    of x in a window stay far below.
+    """
+    try:
+        first = np.linalg.cholesky(design.T @ design).T
+        q = design @ np.linalg.inv(first)
+        second = np.linalg.cholesky(q.T @ q).T
+    except np.linalg.LinAlgError:
+        factors = np.linalg.qr(design)
+        return factors.Q, factors.R
+    return q @ np.linalg.inv(second), second @ first
 
 
 def _powers(x: float, order: int, derivative: int) -> Array:

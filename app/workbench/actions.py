@@ -37,6 +37,7 @@ if TYPE_CHECKING:
     from app.workbench.window import Window
 
 
+_HEAD = 16384  # bytes that are enough to tell a table of cells from a file of curves
 _WORTH_TELLING = 5  # fewer cells than this have their curves before one has read how many are to come
 
 
@@ -414,8 +415,21 @@ def _some(sentences: Sequence[str]) -> str:
 
 
 def _holds_cells(data: bytes, source: str) -> bool:
-    """Whether a file is a table of cells, good or not: it names at least one of their columns."""
-    try:
-        return bool(KNOWN & set(read_table(data, source).columns))
-    except TableError:
-        return False
+    """Whether a file is a table of cells, good or not: it names at least one of their columns.
+
+    The first lines tell it; only where they make no table is the whole file looked at.
+    """
+    for part in (_first_lines(data), data):
+        try:
+            return bool(KNOWN & set(read_table(part, source).columns))
+        except TableError:
+            continue
+    return False
+
+
+def _first_lines(data: bytes) -> bytes:
+    """Whole lines from the start of a file, in an encoding of one byte or of two."""
+    if len(data) <= _HEAD:
+        return data
+    end = data.rfind(b"\n", 0, _HEAD) + 1
+    return data[: end + 1 if end % 2 and b"\0" in data[:_HEAD] else end]

@@ -65,6 +65,8 @@ def find_delimiter(lines: Sequence[str]) -> Delimiter:
 
 def _share_of_numbers(line: str, delimiter: Delimiter) -> float:
     """Between 0 (no row of numbers) and 1 (two or more numbers, and nothing but numbers)."""
+    if delimiter not in line:
+        return 0.0
     cells = [cell for cell in cells_of(line, delimiter)[:_MOST_CELLS] if cell.strip()]
     numbers = sum(_is_number(cell, delimiter) for cell in cells)
     if numbers == 1 == len(cells) and delimiter in "\t;" and delimiter in line:
