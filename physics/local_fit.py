@@ -159,7 +159,8 @@ class LocalData:
         if self.background is None:
             return None
         ends = [float(self.voltage[0]), float(self.voltage[-1])]
-        q, r = orthogonal(legvander(2.0 * (self.voltage - ends[0]) / (ends[1] - ends[0]) - 1.0, order))
+        x = 2.0 * (self.voltage - ends[0]) / (ends[1] - ends[0]) - 1.0
+        q, r = orthogonal(np.asarray(legvander(x, order), dtype=float))
         seen = q @ (q.T @ rest)
         explained, left = float(seen @ seen) / (order + 1), float(rest @ rest - seen @ seen) / (rest.size - order - 1)
         return Legendre(np.linalg.solve(r, q.T @ rest), domain=ends) if explained > _PATTERN * left else None
@@ -243,7 +244,7 @@ class LocalData:
     def _fitted(self, plan: _Plan) -> LocalFit:
         window, rest = plan.window, self.rest[plan.window.index]
         q, r = orthogonal(window.design(self.voltage, plan.order))
-        response = np.linalg.solve(r, q.T)
+        response = np.asarray(np.linalg.solve(r, q.T), dtype=float)
         coefficients = response @ rest
         left = rest - q @ (q.T @ rest)
         freedom = rest.size - plan.order - 1
@@ -289,8 +290,8 @@ def orthogonal(design: Array) -> tuple[Array, Array]:
         second = np.linalg.cholesky(q.T @ q).T
     except np.linalg.LinAlgError:
         factors = np.linalg.qr(design)
-        return factors.Q, factors.R
-    return q @ np.linalg.inv(second), second @ first
+        return np.asarray(factors.Q, dtype=float), np.asarray(factors.R, dtype=float)
+    return np.asarray(q @ np.linalg.inv(second), dtype=float), np.asarray(second @ first, dtype=float)
 
 
 def _powers(x: float, order: int, derivative: int) -> Array:

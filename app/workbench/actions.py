@@ -7,7 +7,7 @@ from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QObject
+from PySide6.QtCore import QObject, QStandardPaths
 from PySide6.QtGui import QAction, QGuiApplication, QKeySequence
 from PySide6.QtWidgets import QComboBox, QFileDialog, QLabel, QMenu, QToolBar
 
@@ -28,7 +28,7 @@ from app.workbench.curve_loader import Arrived, CurveLoader, Wanted
 from app.workbench.number_field import ignore_wheel
 
 if TYPE_CHECKING:
-    from app.files.measured import MeasuredText, Reading
+    from app.files.measured import MeasuredText, Reading, ReadingMemory
     from app.session.curves import Source
     from app.workbench.export_panel import ExportPanel
     from app.workbench.help_panel import HelpPanel
@@ -57,7 +57,7 @@ class Actions(QObject):
         self._to_come = 0
         self._doubts: list[str] = []  # about curve files that have been read
         self._waiting: list[tuple[MeasuredText, Reading]] = []
-        self._choices: dict[str, Reading] = {}  # how files of a shape were read the last time
+        self._memory: ReadingMemory | None = None  # how files of a shape were read the last time
         self._needs_picture: list[QAction] = []
         self._needs_cell: list[QAction] = []
         self._fill_menus()
@@ -101,6 +101,7 @@ class Actions(QObject):
         self.copy_chart = self._action("&Copy waterfall as picture", self._copy_chart, "Ctrl+Shift+C", picture)
         self.copy_table = self._action("Copy ledger as &table", self._copy_table, "Ctrl+Shift+T", picture)
         self.export = self._action("&Export a picture…", self.show_export, "Ctrl+E", picture)
+        self.paste_ = self._action("&Paste cells or measured curves", self.paste, standard.Paste)
         open_ = self._action("&Open cells or measured curves…", self._ask_open, standard.Open)
         inflection = self._action("Gap from the EQE's &inflection", lambda: self._take_gap("inflection"), None, cell)
         mean = self._action("Gap from the EQE's edge &mean", lambda: self._take_gap("edge mean"), None, cell)
@@ -112,7 +113,7 @@ class Actions(QObject):
         previous = self._action("&Previous cell", lambda: self._walk(-1), "Ctrl+PgUp", cell)
         help_ = self._action("&Cautions, conventions and keys", self.show_help, standard.HelpContents)
         self._menu("&File", (open_, save_shelf, None, self.export, save_ledger, None, quit_))
-        self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table))
+        self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table, self.paste_))
         known = (inflection, mean, self.stacks)
         self._menu("&Cell", (self.new, self.duplicate, self.remove, None, *known, None, previous, following))
         self._menu("&Help", (help_,))
@@ -224,20 +225,44 @@ class Actions(QObject):
     def open_file(self, path: Path) -> None:
         """Put the cells of a table on the shelf, or measured curves into the cell on show."""
         try:
-            data = load_bytes(path)
-            if _holds_cells(data, path.name):
-                self._take_cells(data, path)
-            else:
-                self._take_curves(data, path)
+            self._take_data(load_bytes(path), path.name, path.parent)
         except TableError as fault:
             self._say(str(fault), lasting=True)
 
-    def _take_curves(self, data: bytes, path: Path) -> None:
+    def paste(self) -> None:
+        """Take cells or measured curves from the clipboard, as a spreadsheet puts them there."""
+        text = QGuiApplication.clipboard().text()
+        if not text.strip():
+            self._say("The clipboard holds no text: copy the cells of a spreadsheet, with their headings, first.")
+            return
+        try:
+            self._take_data(text.encode("utf-8", "replace"), "clipboard", Path())
+        except TableError as fault:
+            self._say(str(fault), lasting=True)
+
+    def _take_data(self, data: bytes, source: str, folder: Path) -> None:
+        """Take a table of cells or measured curves; TableError where it is neither."""
+        if _holds_cells(data, source):
+            self._take_cells(data, source, folder)
+        else:
+            self._take_curves(data, source)
+
+    @property
+    def memory(self) -> ReadingMemory:
+        """How files of each shape were read the last time."""
+        if self._memory is None:
+            from app.files.measured import ReadingMemory
+
+            home = QStandardPaths.writableLocation(QStandardPaths.StandardLocation.AppConfigLocation)
+            self._memory = ReadingMemory(Path(home) / "readings.json" if home else None)
+        return self._memory
+
+    def _take_curves(self, data: bytes, source: str) -> None:
         """Show what was understood of a file of curves; it is taken from there."""
         from app.files.measured import guess, read_measured, remembered, shape_key
 
-        text = read_measured(data, path.name)
-        choice = self._choices.get(shape_key(text))
+        text = read_measured(data, source)
+        choice = self.memory.recall(shape_key(text))
         self._waiting.append((text, guess(text) if choice is None else remembered(text, choice)))
         if self._import is None or not self._import.isVisible():
             self._preview_next()
@@ -261,7 +286,7 @@ class Actions(QObject):
         panel = self._import
         if panel is None or panel.text is None or panel.reading is None:
             return
-        self._choices[shape_key(panel.text)] = panel.reading
+        unkept = self.memory.keep(shape_key(panel.text), panel.reading)
         source = panel.text.source
         cell = self._session.state.cell or CellEntry(0, Path(source).stem)
         try:
@@ -273,7 +298,7 @@ class Actions(QObject):
                 self._session.do(AddCells((cell,)))
                 command = replace(command, ident=self._session.state.cells[-1].ident)
             self._session.do(command)
-            self._say(f"{source}: {' '.join(sentences)}", lasting=True)
+            self._say(f"{source}: {' '.join((*sentences, *([unkept] if unkept else [])))}", lasting=True)
         self._preview_next()
 
     def _take_gap(self, source: Source) -> None:
@@ -292,19 +317,19 @@ class Actions(QObject):
         else:
             self._say("No gap can be read off this EQE.")
 
-    def _take_cells(self, data: bytes, path: Path) -> None:
-        shelf = shelf_of(read_table(data, path.name), path.name)
+    def _take_cells(self, data: bytes, source: str, folder: Path) -> None:
+        shelf = shelf_of(read_table(data, source), source)
         count = len(shelf.entries)
         if count:
             first = self._session.state.next_ident
             self._session.do(AddCells(shelf.entries, "opening of a table"))
             cells = {cell.ident: cell for cell in self._session.state.cells}
             self._wanted += [
-                Wanted(cells[first + at], row, line, path.parent)
+                Wanted(cells[first + at], row, line, folder)
                 for at, (row, line) in enumerate(zip(shelf.rows, shelf.lines, strict=True))
                 if names_curves(row)
             ]
-        sentence = f"{count} cell{'' if count == 1 else 's'} taken from {path.name}."
+        sentence = f"{count} cell{'' if count == 1 else 's'} taken from {source}."
         if shelf.left_out:
             sentence = f"{sentence} Left out: {_some(shelf.left_out)}"
         self._say(sentence, lasting=bool(shelf.left_out))

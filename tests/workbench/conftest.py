@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from pathlib import Path
 
 import pytest
 from PySide6.QtCore import QEvent, Qt
@@ -28,6 +29,15 @@ def press(entry: QLineEdit, text: str) -> None:
         for kind in (QEvent.Type.KeyPress, QEvent.Type.KeyRelease):
             event = QKeyEvent(kind, Qt.Key.Key_unknown, Qt.KeyboardModifier.NoModifier, letter)
             QApplication.sendEvent(entry, event)
+
+
+@pytest.fixture(autouse=True)
+def home_of_its_own(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytest.MonkeyPatch) -> Path:
+    """Nothing that is remembered from run to run reaches the real home, or another test."""
+    home = tmp_path_factory.mktemp("home")
+    monkeypatch.setenv("XDG_CONFIG_HOME", str(home))
+    monkeypatch.setenv("HOME", str(home))
+    return home
 
 
 @pytest.fixture

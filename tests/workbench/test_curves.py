@@ -6,7 +6,9 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from PySide6.QtGui import QAction
+from PySide6.QtCore import Qt
+from PySide6.QtGui import QAction, QGuiApplication
+from PySide6.QtTest import QTest
 from PySide6.QtWidgets import QComboBox
 
 from app.figures.all_plots import BESIDE
@@ -196,3 +198,53 @@ def test_a_doubtful_comma_is_asked_about_and_can_be_settled(empty_window: Window
     assert panel.preview.item(1, 0).text() == "1.1"
     assert panel.questions.text() == ""
     panel.reject()
+
+
+def test_a_choice_is_known_in_the_next_run(empty_window: Window, tmp_path: Path, home_of_its_own: Path) -> None:
+    _open(empty_window, _write_sweep(tmp_path / "sweep.txt"))
+    kept = list(home_of_its_own.rglob("readings.json"))
+    assert len(kept) == 1
+    assert '"version": 1' in kept[0].read_text(encoding="utf-8")
+
+
+def test_spreadsheet_cells_are_pasted(empty_window: Window) -> None:
+    window = empty_window
+    clipboard = QGuiApplication.clipboard()
+    voltage, current = Diode.through(1.1, 22.0, 298.15, 1.4, 2.0, 2000.0).curve(80)
+    rows = "\n".join(f"{v:.4f}\t{j:.4f}" for v, j in zip(voltage, current, strict=True))
+    clipboard.setText(f"Voltage (V)\tCurrent density (mA/cm²)\n{rows}\n")
+    window.actions_.paste_.trigger()
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    assert panel.isVisible()
+    assert "clipboard" in panel.windowTitle()
+    panel.take()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert cell.values["voc"] == pytest.approx(1.1, abs=1e-3)
+    clipboard.setText("name\tgap_eV\tvoc_V\tjsc_mA_cm2\tff_pct\nPasted\t1,6\t1,1\t23\t79\n")
+    window.actions_.paste_.trigger()
+    settle()
+    assert window.session.state.cells[-1].name == "Pasted"
+    assert window.session.state.cells[-1].values["gap"] == 1.6
+    before = window.session.state
+    for text in ("", "   ", "hello there"):
+        clipboard.setText(text)
+        window.actions_.paste_.trigger()
+        settle()
+        assert window.session.state == before
+        assert "clipboard" in window.notices.text.text().lower()
+
+
+def test_pasting_into_a_field_stays_in_the_field(empty_window: Window) -> None:
+    window = empty_window
+    QGuiApplication.clipboard().setText("1.55")
+    entry = window.inputs.fields["gap"].entry
+    entry.setFocus()
+    QTest.keyClick(entry, Qt.Key.Key_V, Qt.KeyboardModifier.ControlModifier)
+    settle()
+    assert entry.text() == "1.55"
+    assert window.session.state.cell is not None
+    assert window.session.state.cell.values["gap"] == 1.55

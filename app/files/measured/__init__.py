@@ -7,6 +7,7 @@ what, `apply` makes curves of them.
 from app.files.measured.apply import apply
 from app.files.measured.curves import EqeCurve, Irradiance, JvSweep, MeasuredCurve, Pairs
 from app.files.measured.guess import guess, remembered
+from app.files.measured.memory import ReadingMemory
 from app.files.measured.model import Block, Column, MeasuredText
 from app.files.measured.read import read_measured
 from app.files.measured.reading import Kind, Reading, Trace, reading_from_json, reading_to_json
@@ -25,6 +26,7 @@ __all__ = [
     "MeasuredText",
     "Pairs",
     "Reading",
+    "ReadingMemory",
     "Trace",
     "Unit",
     "apply",
