@@ -85,6 +85,23 @@ def taken(measured: Sequence[MeasuredCurve], entry: CellEntry, file: str) -> tup
     return command, tuple(take.sentences)
 
 
+def next_sweep(entry: CellEntry) -> tuple[SetFigures, tuple[str, ...]] | None:
+    """The change that reads the figures off the next of several sweeps under light; None where there is no other.
+
+    The sweep that feeds the figures stands first, here and in the plots.
+    """
+    lit = [sweep for sweep in entry.curves.sweeps if sweep.lit]
+    if len(lit) < 2:
+        return None
+    ordered = (*lit[1:], lit[0])
+    dark = (sweep for sweep in entry.curves.sweeps if not sweep.lit)
+    take = _Taking(entry, replace(entry.curves, sweeps=(*ordered, *dark)))
+    _read_off(take, list(ordered))
+    name = ordered[0].direction or ordered[0].label
+    command = SetFigures(entry.ident, take.values, take.sources, take.curves, f"figures from the {name} sweep")
+    return command, tuple(take.sentences)
+
+
 def _per_area(take: _Taking, curve: JvSweep | Pairs, current: np.ndarray) -> np.ndarray | None:
     """Current densities [mA cm⁻²], or None where no area is known."""
     if curve.is_density:
@@ -112,6 +129,11 @@ def _take_sweeps(take: _Taking, measured: list[JvSweep]) -> None:
     if not lit:
         take.sentences.append("The sweep was taken in the dark: it is kept, but no figure is read off it.")
         return
+    _read_off(take, lit)
+
+
+def _read_off(take: _Taking, lit: list[Sweep]) -> None:
+    """Figures and fit of the first of some sweeps under light, and what the others say beside it."""
     irradiance = take.number("irradiance", 100.0)
     figures = [figures_of_merit(s.voltage, s.current, irradiance) for s in lit]
     _put_figures(take, lit[0], figures[0])

@@ -105,6 +105,7 @@ class Actions(QObject):
         open_ = self._action("&Open cells or measured curves…", self._ask_open, standard.Open)
         inflection = self._action("Gap from the EQE's &inflection", lambda: self._take_gap("inflection"), None, cell)
         mean = self._action("Gap from the EQE's edge &mean", lambda: self._take_gap("edge mean"), None, cell)
+        other = self._action("Figures from the next s&weep", self._take_next_sweep, None, cell)
         self.stacks = self._action("Partial &stacks…", self.show_stacks, None, cell)
         save_shelf = self._action("&Save the shelf as a table…", self._ask_save_shelf, standard.Save, cell)
         save_ledger = self._action("Save the &ledger as CSV…", self._ask_save_ledger, "Ctrl+Shift+S", picture)
@@ -114,7 +115,7 @@ class Actions(QObject):
         help_ = self._action("&Cautions, conventions and keys", self.show_help, standard.HelpContents)
         self._menu("&File", (open_, save_shelf, None, self.export, save_ledger, None, quit_))
         self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table, self.paste_))
-        known = (inflection, mean, self.stacks)
+        known = (inflection, mean, other, self.stacks)
         self._menu("&Cell", (self.new, self.duplicate, self.remove, None, *known, None, previous, following))
         self._menu("&Help", (help_,))
 
@@ -300,6 +301,19 @@ class Actions(QObject):
             self._session.do(command)
             self._say(f"{source}: {' '.join((*sentences, *([unkept] if unkept else [])))}", lasting=True)
         self._preview_next()
+
+    def _take_next_sweep(self) -> None:
+        """Read the figures off another of the cell's sweeps under light."""
+        from app.session.curve_import import next_sweep
+
+        cell = self._session.state.cell
+        found = None if cell is None else next_sweep(cell)
+        if found is None:
+            self._say("This cell has no second sweep under light.")
+            return
+        command, sentences = found
+        self._session.do(command)
+        self._say(" ".join(sentences), lasting=True)
 
     def _take_gap(self, source: Source) -> None:
         """Set the gap by one of the EQE's definitions."""

@@ -248,3 +248,27 @@ def test_pasting_into_a_field_stays_in_the_field(empty_window: Window) -> None:
     assert entry.text() == "1.55"
     assert window.session.state.cell is not None
     assert window.session.state.cell.values["gap"] == 1.55
+
+
+def test_the_figures_may_come_from_the_other_sweep(empty_window: Window) -> None:
+    window = empty_window
+    _action(window, "next sweep").trigger()
+    assert "no second sweep" in window.notices.text.text()
+    _open(window, Path(__file__).parents[2] / "resources" / "demo" / "plover_3_jv.txt")
+    forward = window.session.state.cell
+    assert forward is not None
+    assert forward.values["voc"] == pytest.approx(1.048, abs=1e-3)
+    assert forward.values["ideality"] == pytest.approx(1.55, abs=0.05)
+    _action(window, "next sweep").trigger()
+    settle()
+    reverse = window.session.state.cell
+    assert reverse is not None
+    assert reverse.values["voc"] == pytest.approx(1.056, abs=1e-3)
+    assert window.session.undo_name == "figures from the reverse sweep"
+    assert [sweep.direction for sweep in reverse.curves.sweeps] == ["reverse", "forward"]
+    assert "reverse" in window.notices.text.text()
+    _action(window, "next sweep").trigger()
+    settle()
+    again = window.session.state.cell
+    assert again is not None
+    assert dict(again.values) == dict(forward.values)
