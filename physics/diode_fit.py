@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 import numpy as np
@@ -99,8 +99,7 @@ def fit_one_diode(voltage: ArrayLike, current: ArrayLike, temperature: float, *,
     interval on which χ² rises by less than 1.96² over its least physical value, with the estimate x that the data
     alone would give: from 0 to x + √(x² + 1.96² u²) for x < 0 and to x + 1.96 u for x > 0.
     """
-    if not 0.0 < temperature < np.inf:
-        raise ValueError(f"the temperature must be a positive number of kelvin, not {temperature:g}")
+    _check_temperature(temperature)
     sweep = oriented(voltage, current)
     v, j = sweep.voltage, sweep.current
     reason = _refusal(sweep, lit)
@@ -115,6 +114,45 @@ def fit_one_diode(voltage: ArrayLike, current: ArrayLike, temperature: float, *,
         return _refused(v, "The fit did not settle on a one-diode curve.")
     model, used = found
     return _result(model, v, j, used, float(thermal_voltage(temperature)), sweep.message)
+
+
+def at_temperature(fit: DiodeFit, before: float, after: float) -> DiodeFit:
+    """The same fitted curve, read at another temperature: of its parameters only n = s/Vt is another.
+
+    Parameters
+    ----------
+    fit : DiodeFit
+        Of a sweep that was taken to be at the temperature `before`.
+    before, after : float
+        Temperatures [K].
+
+    Raises
+    ------
+    ValueError
+        When a temperature is not positive.
+    """
+    for temperature in (before, after):
+        _check_temperature(temperature)
+    if before == after or not fit.converged:
+        return fit
+    factor = before / after
+    n = fit.parameters["n"]
+    scaled = replace(
+        n,
+        value=n.value * factor,
+        u=None if n.u is None else n.u * factor,
+        low95=n.low95 * factor,
+        high95=n.high95 * factor,
+    )
+    covariance = fit.covariance.copy()
+    covariance[0] *= factor
+    covariance[:, 0] *= factor
+    return replace(fit, parameters={**fit.parameters, "n": scaled}, covariance=covariance)
+
+
+def _check_temperature(temperature: float) -> None:
+    if not 0.0 < temperature < np.inf:
+        raise ValueError(f"the temperature must be a positive number of kelvin, not {temperature:g}")
 
 
 def _refusal(sweep: Oriented, lit: bool) -> str:

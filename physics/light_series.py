@@ -125,6 +125,23 @@ class PseudoCurve:
     fault: SeriesFault | None = None
 
 
+def pseudo_points(series: LightSeries, jsc: float) -> tuple[Array, Array]:
+    """The measured points of the curve without series resistance: V = Voc_k [V] and J = Jsc − Jsc_k [mA cm⁻²].
+
+    Parameters
+    ----------
+    series : LightSeries
+    jsc : float
+        Current density under the light of the measurement [mA cm⁻²].
+
+    Returns
+    -------
+    voltage, current : ndarray, shape (n,)
+        In falling order of the voltage.
+    """
+    return series.voc[::-1], jsc - series.jsc[::-1]
+
+
 def pseudo_curve(series: LightSeries, jsc: float) -> PseudoCurve:
     """The curve V = Voc_k, J = Jsc − Jsc_k, which superposition says the junction alone would have.
 
@@ -145,7 +162,7 @@ def pseudo_curve(series: LightSeries, jsc: float) -> PseudoCurve:
     The construction of R. A. Sinton and A. Cuevas, 16th European Photovoltaic Solar Energy Conference (2000) 1152
     (from memory).
     """
-    voltage, current = series.voc[::-1], jsc - series.jsc[::-1]
+    voltage, current = pseudo_points(series, jsc)
     if series.jsc.size < 3:
         return PseudoCurve(voltage, current, np.nan, np.nan, SeriesFault.TOO_FEW)
     if series.jsc[-1] < jsc * (1.0 - 1e-6):

@@ -167,6 +167,31 @@ def radiative_current(curve: Curve, temperature: float, tail: Tail | None = None
     return measured + extrapolated, extrapolated
 
 
+def emission_density(value: Callable[[Array], Array], energy: ArrayLike, temperature: float) -> Array:
+    """What a cell emits by reciprocity at each photon energy, EQE(E) · q φ_bb(E, T): the integrand of J0_rad.
+
+    Parameters
+    ----------
+    value : callable
+        EQE at photon energies [eV]: `Curve.at` or `Tail.at`.
+    energy : array_like
+        Photon energies [eV], above 0.
+    temperature : float
+        Temperature of the cell [K].
+
+    Returns
+    -------
+    ndarray
+        Current density per energy [mA cm⁻² eV⁻¹], of the shape of `energy`.
+
+    Notes
+    -----
+    U. Rau, Phys. Rev. B 76 (2007) 085303, doi:10.1103/PhysRevB.76.085303.
+    """
+    energy = np.asarray(energy, dtype=float)
+    return value(energy) * thermal_flux(energy, temperature)
+
+
 def _thermal_sum(value: Callable[[Array], Array], edges: Array, temperature: float) -> float:
     """∫ value · φ_bb dE [mA cm⁻²] over pieces between `edges` [eV], cut so that none is wider than half a kT."""
     kt = BOLTZMANN * temperature / ELEMENTARY_CHARGE
@@ -176,4 +201,4 @@ def _thermal_sum(value: Callable[[Array], Array], edges: Array, temperature: flo
     place = np.arange(pieces.sum()) - np.repeat(np.cumsum(pieces) - pieces, pieces)
     middle = starts + (place + 0.5) * widths
     energy = middle + 0.5 * widths * _NODES[:, None]
-    return float(np.sum(0.5 * widths * (_WEIGHTS @ (value(energy) * thermal_flux(energy, temperature)))))
+    return float(np.sum(0.5 * widths * (_WEIGHTS @ emission_density(value, energy, temperature))))

@@ -12,8 +12,8 @@ from app.figures.curve_plots import (
     fit_plot_of,
     lit_sweeps,
     series_plot_of,
-    spectrum_plot_of,
 )
+from app.figures.photon_plot import spectrum_plot_of
 from app.figures.plots import gap_plot_of, jv_plot_of
 from app.figures.spec import PlotSpec
 from app.figures.stack_plot import stack_plot_of

@@ -11,17 +11,14 @@ from app.figures.plot_parts import STALE, caption_of, cell_name, decades, round_
 from app.figures.spec import Mark, PlotSpec, Series
 from app.session.curves import Sweep, edge_for, emission_for, fit_for
 from app.session.fields import FIELD_BY_KEY
-from app.session.light import light_named
 from app.session.outcome import Picture
-from app.wording import with_unit
+from app.wording import unbroken, with_unit
 from physics.diode_fit import DiodeFit
-from physics.emission import thermal_flux
 from physics.ledger import Ledger
 from physics.light_series import LightSeries, ideality_of
-from physics.quantum import Curve
+from physics.quantum import Curve, emission_density
 from physics.units import EV_NM, Array
 
-_STEP_NM = 5.0  # means over this much wavelength keep a drawn spectrum readable
 _DEEP = 6  # decades of the emission that are worth a look
 _FITTED = (("n", "ideality"), ("rs", "rs"), ("rsh", "rsh"))
 
@@ -77,10 +74,18 @@ def _emission(eqe: Curve, temperature: float) -> tuple[Array, Array, Array, Arra
     start = low if tail is None else min(max(tail.start, low), high)
     points = EV_NM / eqe.wavelength[::-1]
     energy = np.unique(np.concatenate([points[points >= start], np.linspace(start, high, 400)]))
-    measured = eqe.at(energy) * thermal_flux(energy, temperature)
-    below = np.empty(0) if tail is None else np.linspace(max(tail.start - 25.0 * tail.slope, 0.05), tail.start, 200)
-    extrapolated = np.empty(0) if tail is None else tail.anchor * np.exp((below - tail.start) / tail.slope)
-    return energy, measured, below, extrapolated * thermal_flux(below, temperature) if tail is not None else below
+    measured = emission_density(eqe.at, energy, temperature)
+    if tail is None:
+        return energy, measured, np.empty(0), np.empty(0)
+    deepest = max(tail.start - 25.0 * tail.slope, 0.05)
+    below = np.linspace(deepest, np.nextafter(tail.start, 0.0), 200)  # at its start it is over
+    return energy, measured, below, emission_density(tail.at, below, temperature)
+
+
+def _at_gap(gap: float, series: list[Series]) -> list[tuple[float, float]]:
+    """The gap and the height there of the curve that reaches it, if one does."""
+    reached = [s for s in series if s.x[0] <= gap <= s.x[-1]]
+    return [(gap, float(np.interp(gap, s.x, s.y))) for s in reached[:1]]
 
 
 def _logarithm(value: Array) -> Array:
@@ -107,15 +112,14 @@ def emission_plot_of(picture: Picture, stale: bool = False, *, captioned: bool =
     shown = [e[np.nan_to_num(_logarithm(v), nan=-999.0) > low] for e, v in ((energy, measured), (below, extrapolated))]
     span = np.concatenate(shown)
     whole, share = emission_for(eqe, temperature)
-    gap = float(picture.ledger.limit.gap)
-    at_gap = float(_logarithm(eqe.at(np.array([gap])) * thermal_flux(gap, temperature))[0])
-    marks = []
-    if at_gap == at_gap:
-        marks.append(Mark("gap", f"Eg {with_unit(gap, 'eV', 4)}", gap, at_gap, "limit", "diamond", False, "ne"))
-    note = (
-        f"J0,rad = {with_unit(whole, 'mA cm⁻²', 3)} into one hemisphere; "
-        f"{with_unit(100.0 * share, '%', 3)} of it under the extrapolated tail"
-    )
+    marks = [
+        Mark("gap", f"Eg {with_unit(gap, 'eV', 4)}", gap, at, "limit", "diamond", False, "ne")
+        for gap, at in _at_gap(float(picture.ledger.limit.gap), series)
+        if low <= at <= high
+    ]
+    amount = with_unit(whole, "mA cm⁻²", 3)
+    part = with_unit(100.0 * share, "%", 3) if below.size else "nothing"
+    rest = f"{part} of it under the extrapolated tail" if below.size else "nothing of it is extrapolated"
     return PlotSpec(
         title=f"{cell_name(picture)}: emission by reciprocity",
         x_label="Photon energy (eV)",
@@ -124,68 +128,10 @@ def emission_plot_of(picture: Picture, stale: bool = False, *, captioned: bool =
         x_range=round_range(float(span.min()), float(span.max())),
         y_range=(float(low), float(high)),
         y_names=decades(low, high),
+        note=f"{unbroken(f'J0,rad {amount},')} {unbroken(f'{part} extrapolated')}",
         series=tuple(series),
         marks=tuple(marks),
-        caption=(note, *caption_of(picture)) if captioned else (),
-        stale=STALE if stale else "",
-    )
-
-
-@lru_cache(maxsize=16)
-def _light_bins(spectrum: str, irradiance: float) -> tuple[Array, Array]:
-    """Middles [nm] and photon current [µA cm⁻² nm⁻¹] of narrow bins of a light, up to 99 % of its photons."""
-    light = light_named(spectrum)
-    low, high = light.gap_range
-    scale = 1.0 if math.isnan(irradiance) else irradiance / light.power
-    edges = np.arange(EV_NM / high, min(EV_NM / low, 20_000.0), _STEP_NM)
-    shorter = light.photon_current_above(np.clip(EV_NM / edges, low, high)) * scale
-    enough = int(np.searchsorted(shorter, 0.99 * shorter[-1])) + 1
-    flux = 1e3 * np.diff(shorter[: enough + 1]) / _STEP_NM
-    return (edges[: flux.size] + 0.5 * _STEP_NM), flux
-
-
-def _amount(name: str, current: float) -> str:
-    return f"{name} {with_unit(round(current, 2), 'mA cm⁻²', 4)}"
-
-
-def spectrum_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True) -> PlotSpec:
-    """The photons of the light over wavelength: collected, lost above the gap, and below it."""
-    ledger, curves = picture.ledger, picture.entry.curves
-    q, gap = ledger.quantities, float(ledger.limit.gap)
-    wavelength, flux = _light_bins(picture.entry.spectrum, float(ledger.cell.irradiance))
-    edge = EV_NM / gap
-    x = np.insert(wavelength, int(np.searchsorted(wavelength, edge)), [edge, edge])
-    y = np.interp(x, wavelength, flux)
-    inside = np.arange(x.size) <= int(np.searchsorted(wavelength, edge))
-    above, below = np.where(inside, y, np.nan), np.where(inside, np.nan, y)
-    series = [Series("below", "below the gap", x, below, "muted", filled=True)]
-    jsc_limit = float(q.jsc_limit)
-    if curves.eqe is None:
-        series.append(Series("above", _amount("above the gap", jsc_limit), x, above, "spectral", filled=True))
-        note = "No EQE: what of the photons above the gap is collected is not known at each wavelength"
-    else:
-        eqe = np.maximum(curves.eqe.at(EV_NM / x), 0.0)
-        lost = jsc_limit - float(q.jsc_eqe)
-        if curves.reflectance is not None:
-            back = float(q.jsc_reflected)
-            series.append(Series("reflected", _amount("reflected", back), x, above, "limit", filled=True))
-            lost -= back
-            kept = above * (1.0 - np.clip(curves.reflectance.at(EV_NM / x), 0.0, 1.0))
-            series.append(Series("above", _amount("lost above the gap", lost), x, kept, "spectral", filled=True))
-        else:
-            series.append(Series("above", _amount("lost above the gap", lost), x, above, "spectral", filled=True))
-        collected = float(q.jsc_eqe) + float(q.jsc_sub_gap)
-        series.append(Series("collected", _amount("collected", collected), x, y * eqe, "cell", filled=True))
-        note = "Collected: light times EQE"
-    return PlotSpec(
-        title=f"{cell_name(picture)}: photons of the light",
-        x_label="Wavelength (nm)",
-        y_label="Photons as current (µA cm⁻² nm⁻¹)",
-        y_short="µA cm⁻² nm⁻¹",
-        x_range=round_range(0.0, min(2.0 * edge, float(wavelength[-1]))),
-        y_range=round_range(0.0, 1.05 * float(flux.max())),
-        series=tuple(series),
-        caption=(f"{note}; drawn as means over {with_unit(_STEP_NM, 'nm')}", *caption_of(picture)) if captioned else (),
+        caption=(f"J0,rad = {unbroken(amount)} into one hemisphere; {rest}", *caption_of(picture)) if captioned else (),
         stale=STALE if stale else "",
     )
 
@@ -205,6 +151,11 @@ def plus_minus(value: float, u: float | None) -> str:
     return f"{value:.{decimals}f} ± {u:.{decimals}f}"
 
 
+def _two_digits(value: float) -> float:
+    """A bound, which is known to no more than its size."""
+    return float(f"{value:.2g}")
+
+
 def fit_texts(fit: DiodeFit) -> tuple[str, ...]:
     """What a fit says of n, Rs and Rsh, with standard uncertainties, or what cannot be told."""
     words = {"lower bound": "at least", "upper bound": "at most"}
@@ -213,11 +164,12 @@ def fit_texts(fit: DiodeFit) -> tuple[str, ...]:
         about, parameter = FIELD_BY_KEY[key], fit.parameters[name]
         stated, unit = parameter.stated, about.unit
         if parameter.status == "fitted" and parameter.u is not None:
-            texts.append(f"{about.symbol} = {plus_minus(parameter.value, parameter.u)}{f' {unit}' if unit else ''}")
+            text = f"{about.symbol} = {plus_minus(parameter.value, parameter.u)}{f' {unit}' if unit else ''}"
         elif stated is not None and parameter.status in words:
-            texts.append(f"{about.symbol} {words[parameter.status]} {with_unit(stated, unit, 3)}")
+            text = f"{about.symbol} {words[parameter.status]} {with_unit(_two_digits(stated), unit)}"
         else:
-            texts.append(f"{about.symbol} cannot be told")
+            text = f"{about.symbol} cannot be told"
+        texts.append(unbroken(text))
     return tuple(texts)
 
 
@@ -234,14 +186,19 @@ def fit_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
     most = max(1.2 * float(np.nanmax(np.abs(residual))), 3e3 * fit.scale, 1e-6)
     ends = np.array([fit.voltage[0], fit.voltage[-1]])
     band = np.full(2, 2e3 * fit.scale)
+    name = f"{sweeps[0].direction} sweep" if sweeps[0].direction and len(sweeps) > 1 else "sweep"
     series = [
+        Series("zero", "", ends, np.zeros(2), "muted"),
         Series("upper", "± 2σ", ends, band, "muted", "dashed"),
         Series("lower", "", ends, -band, "muted", "dashed"),
-        Series("residual", "measured − fitted", fit.voltage, residual, "cell"),
+        Series("residual", name, fit.voltage, residual, "cell", "none", markers=True),
     ]
     if np.isfinite(apart).any():
-        series.append(Series("apart", "left out", fit.voltage, np.clip(apart, -most, most), "non-radiative", "dotted"))
+        kept = np.clip(apart, -most, most)  # one far off stands on the edge
+        series.append(Series("apart", "left out", fit.voltage, kept, "non-radiative", "none", markers=True))
     texts = "; ".join(fit_texts(fit))
+    told = f"σ = {with_unit(1e3 * fit.scale, 'µA cm⁻²', 2)}, the residuals' standard deviation"
+    told += f"; {fit.message}" if fit.message else ""
     return PlotSpec(
         title=f"{cell_name(picture)}: one-diode fit, {texts}",
         x_label="Voltage (V)",
@@ -250,7 +207,8 @@ def fit_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True
         x_range=round_range(float(ends[0]), float(ends[1])),
         y_range=round_range(-most, most),
         series=tuple(series),
-        caption=(f"One-diode fit: {texts}", *caption_of(picture)) if captioned else (),
+        note=texts,
+        caption=(told, *caption_of(picture)) if captioned else (),
         stale=STALE if stale else "",
     )
 

@@ -23,7 +23,7 @@ from app.figures.plot_layout import (
     mark_labels,
 )
 from app.figures.sheet import CAP, Sheet
-from app.figures.spec import Dash, Mark, PlotSpec, Role, Series, Symbol
+from app.figures.spec import Dash, Mark, PlotSpec, Role, Series, Symbol, dot_scale
 from app.figures.style import Style
 
 #: A text further from its mark than this, in type sizes, is tied to it by a thin line.
@@ -68,21 +68,22 @@ def paint_plot(sheet: Sheet, spec: PlotSpec, rect: QRectF, style: Style, palette
     below = len(rows) * style.small * 1.5
     grid = layout_grid(sheet, spec, QRectF(left, top, room, bottom - top), style)
     curves = [_curve(series, grid) for series in spec.series]
-    points = _points(curves, style)
+    points = _points(spec, curves, grid, style)
     labels = mark_labels(sheet, spec, grid, points, style)
     key = key_corner(sheet, named, grid, points, [*labels, *mark_areas(spec, grid, style)], style)
     if key is None and named:
         # No corner is free: the key goes beneath, and everything moves up to make room for it.
         grid = layout_grid(sheet, spec, QRectF(left, top, room, bottom - top - below), style)
         curves = [_curve(series, grid) for series in spec.series]
-        labels = mark_labels(sheet, spec, grid, _points(curves, style), style)
+        labels = mark_labels(sheet, spec, grid, _points(spec, curves, grid, style), style)
     _paint_grid(sheet, spec, grid, left, style, palette)
     for series, (x, y) in zip(spec.series, curves, strict=True):
         if series.filled:
             _paint_area(sheet, series, grid, shown)
             continue
         colour = _ink(series.role, shown, bool(spec.stale))
-        sheet.polyline(x, y, colour, style.curve, dashes(series.dash, style.curve))
+        if series.dash != "none":
+            sheet.polyline(x, y, colour, style.curve, dashes(series.dash, style.curve))
         if series.markers:
             _paint_dots(sheet, series, grid, colour, style)
     for mark, area in zip(spec.marks, labels, strict=True):
@@ -182,13 +183,23 @@ def _paint_area(sheet: Sheet, series: Series, grid: Grid, palette: Palette) -> N
 def _paint_dots(sheet: Sheet, series: Series, grid: Grid, colour: str, style: Style) -> None:
     """A dot on each point inside the frame."""
     frame = grid.frame.adjusted(-0.5, -0.5, 0.5, 0.5)
+    radius = style.curve * 1.4 * dot_scale(series)
     for x, y in zip(grid.x(np.asarray(series.x)).tolist(), grid.y(np.asarray(series.y)).tolist(), strict=True):
-        if frame.contains(x, y):
-            sheet.ellipse(x, y, style.curve * 1.4, colour)
+        if math.isfinite(x + y) and frame.contains(x, y):  # Qt takes NaN to be inside
+            sheet.ellipse(x, y, radius, colour)
 
 
-def _points(curves: list[tuple[Floats, Floats]], style: Style) -> Floats:
-    parts = [dense(x, y, style.base * 0.25) for x, y in curves]
+def _points(spec: PlotSpec, curves: list[tuple[Floats, Floats]], grid: Grid, style: Style) -> Floats:
+    """Points [units] that stand for all that is drawn, areas included: texts keep off them."""
+    parts = []
+    for series, (x, y) in zip(spec.series, curves, strict=True):
+        rim = dense(x, y, style.base * 0.25)
+        parts.append(rim)
+        if series.filled:
+            depths = np.arange(style.small / 2.0, grid.frame.height(), style.small)
+            inside = np.repeat(rim[::4], depths.size, axis=0)
+            inside[:, 1] += np.tile(depths, len(rim[::4]))
+            parts.append(inside[inside[:, 1] < grid.frame.bottom()])
     return np.vstack(parts) if parts else np.empty((0, 2))
 
 
@@ -203,7 +214,7 @@ def _paint_key(
             if series.filled:
                 box = QRectF(x + style.small * 0.9, middle - style.small * 0.45, style.small * 1.5, style.small * 0.9)
                 sheet.rect(box, palette.tones[series.role].fill, palette.tones[series.role].outline, style.hairline)
-            else:
+            elif series.dash != "none":
                 sheet.line(x, middle, end, middle, colour, style.curve, dashes(series.dash, style.curve))
             if series.markers:
                 sheet.ellipse((x + end) / 2, middle, style.curve * 1.4, colour)
@@ -236,7 +247,8 @@ def _paint_grid(sheet: Sheet, spec: PlotSpec, grid: Grid, left: float, style: St
     sheet.text(x, baseline, label, style.small, palette.ink)
     name = spec.y_name(sheet.width(spec.y_label, style.small) <= frame.height())
     text = sheet.fit(name, style.small, frame.height())
-    sheet.turned_text(left + CAP * style.small / 2, frame.center().y(), text, style.small, palette.ink)
+    if text:
+        sheet.turned_text(left + CAP * style.small / 2, frame.center().y(), text, style.small, palette.ink)
 
 
 def _corners(symbol: Symbol, x: float, y: float, radius: float) -> list[tuple[float, float]]:

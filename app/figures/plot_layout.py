@@ -52,7 +52,7 @@ def layout_grid(sheet: Sheet, spec: PlotSpec, area: QRectF, style: Style) -> Gri
     height = max(style.base, area.height() - axis_foot(style))
     y_ticks = _ticks(spec.y_range, spec.y_names, max(3, int(height / (style.small * 2.6))))
     widest = max((sheet.width(text, style.small) for _, text in y_ticks), default=0.0)
-    left = style.base * 1.55 + widest + reach + style.small * 0.25
+    left = (style.base * 1.55 if spec.y_label else 0.0) + widest + reach + style.small * 0.25
     # The last number of the x axis is centred under its tick: half of it may stand out at the right.
     right = style.base * 0.4
     x_ticks: list[tuple[float, str]] = []

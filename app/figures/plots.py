@@ -7,13 +7,13 @@ from functools import lru_cache
 
 import numpy as np
 
-from app.figures.curve_plots import lit_sweeps
+from app.figures.curve_plots import fit_texts, lit_sweeps
 from app.figures.plot_parts import STALE, caption_of, cell_name, round_range, short_name
 from app.figures.spec import Dash, Mark, PlotSpec, Role, Series, Side
 from app.session.curves import Sweep, fit_for
 from app.session.outcome import Picture
 from app.wording import percent
-from physics.light_series import LightSeries, pseudo_curve
+from physics.light_series import LightSeries, pseudo_curve, pseudo_points
 from physics.limit import Limit
 
 
@@ -30,7 +30,7 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
         label = sweep.direction or f"sweep {k + 1}"
         series.append(Series(f"sweep {k}", f"{label} (measured)", sweep.voltage, sweep.current, "cell", dash))
     if sweeps:
-        fitted = _fitted(sweeps[0], float(ledger.cell.temperature))
+        fitted = _fitted(sweeps[0])
         series += [] if fitted is None else [fitted]
     light = picture.entry.curves.series
     if light is not None and light.jsc.size > 2:
@@ -59,15 +59,15 @@ def jv_plot_of(picture: Picture, stale: bool = False, *, captioned: bool = True)
         y_range=round_range(0.0, 1.12 * max(float(limit.jsc), float(ledger.cell.jsc))),
         series=tuple(series),
         marks=tuple(marks),
-        caption=(note, *caption_of(picture)) if captioned else (),
+        caption=(note, *_curves_told(picture), *caption_of(picture)) if captioned else (),
         stale=STALE if stale else "",
     )
 
 
 @lru_cache(maxsize=8)
-def _fitted(sweep: Sweep, temperature: float) -> Series | None:
-    """The one-diode fit to a sweep, or None."""
-    fit = fit_for(sweep, temperature)
+def _fitted(sweep: Sweep) -> Series | None:
+    """The one-diode fit to a sweep, or None; the curve is the same whatever the temperature."""
+    fit = fit_for(sweep)
     if not fit.converged:
         return None
     at = np.linspace(fit.voltage[0], fit.voltage[-1], 160)
@@ -77,8 +77,23 @@ def _fitted(sweep: Sweep, temperature: float) -> Series | None:
 @lru_cache(maxsize=8)
 def _pseudo(light: LightSeries, jsc: float) -> Series:
     """The curve without series resistance."""
-    pseudo = pseudo_curve(light, jsc)
-    return Series("pseudo", "without Rs", pseudo.voltage, pseudo.current, "fill-factor", "dotted")
+    return Series("pseudo", "without Rs", *pseudo_points(light, jsc), "fill-factor", "dotted")
+
+
+def _curves_told(picture: Picture) -> tuple[str, ...]:
+    """What the fit and the curve without series resistance say, for a caption."""
+    cell, lines = picture.ledger.cell, []
+    sweeps, light = lit_sweeps(picture), picture.entry.curves.series
+    if sweeps:
+        fit = fit_for(sweeps[0], float(cell.temperature))
+        which = f" to the {sweeps[0].direction} sweep" if sweeps[0].direction and len(sweeps) > 1 else ""
+        if fit.converged:
+            lines.append(f"One-diode fit{which}: {'; '.join(fit_texts(fit))}")
+    if light is not None:
+        pseudo = pseudo_curve(light, float(cell.jsc))
+        if pseudo.fault is None:
+            lines.append(f"Without Rs, from the light series: FF {percent(pseudo.fill_factor, 1)}")
+    return tuple(lines)
 
 
 def _power_mark(role: Role, voltage: np.ndarray, current: np.ndarray, efficiency: float) -> Mark:

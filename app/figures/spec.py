@@ -6,6 +6,7 @@ on the screen and into every kind of file. Texts arrive here ready to print; pos
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from typing import Literal
 
@@ -121,7 +122,8 @@ class WaterfallSpec:
     stale: str = ""
 
 
-Dash = Literal["solid", "dashed", "dotted"]
+#: How a curve is stroked; "none" leaves its markers alone.
+Dash = Literal["solid", "dashed", "dotted", "none"]
 
 
 @dataclass(frozen=True, eq=False)
@@ -140,6 +142,11 @@ class Series:
     dash: Dash = "solid"
     filled: bool = False
     markers: bool = False
+
+
+def dot_scale(series: Series) -> float:
+    """How large the dots of a series are beside those of a few points: many are drawn smaller, to stay apart."""
+    return min(1.0, max(0.4, math.sqrt(150.0 / max(series.x.size, 1))))
 
 
 Symbol = Literal["circle", "square", "diamond", "triangle"]
@@ -187,6 +194,8 @@ class PlotSpec:
         Lines of small print.
     stale : str
         Empty, or why the picture is not of the present input.
+    note : str
+        What the plot tells in figures, for a live plot, which has no caption; may be empty.
     """
 
     title: str
@@ -201,6 +210,7 @@ class PlotSpec:
     y_short: str = ""
     x_names: tuple[tuple[float, str], ...] = ()
     y_names: tuple[tuple[float, str], ...] = ()
+    note: str = ""
 
     def y_name(self, fits: bool) -> str:
         """Name of the y axis where the full one `fits`, or does not."""

@@ -9,7 +9,7 @@ from typing import Literal
 import numpy as np
 
 from app.session.light import light_named
-from physics.diode_fit import DiodeFit, fit_one_diode
+from physics.diode_fit import DiodeFit, at_temperature, fit_one_diode
 from physics.edge import Edge, edge_of
 from physics.light_series import LightSeries
 from physics.quantum import Curve, collected_current, radiative_current
@@ -53,6 +53,7 @@ class Curves:
 
 
 NO_CURVES = Curves()
+_STANDARD = 298.15  # [K]
 
 
 @lru_cache(maxsize=64)
@@ -62,9 +63,14 @@ def edge_for(eqe: Curve) -> Edge:
 
 
 @lru_cache(maxsize=32)
-def fit_for(sweep: Sweep, temperature: float) -> DiodeFit:
-    """One-diode fit to a lit sweep at a temperature [K], found once."""
-    return fit_one_diode(sweep.voltage, sweep.current, temperature)
+def _fit_of(sweep: Sweep) -> DiodeFit:
+    return fit_one_diode(sweep.voltage, sweep.current, _STANDARD)
+
+
+@lru_cache(maxsize=32)
+def fit_for(sweep: Sweep, temperature: float = _STANDARD) -> DiodeFit:
+    """One-diode fit to a lit sweep at a temperature [K]. The curve, found once, is the same at all temperatures."""
+    return at_temperature(_fit_of(sweep), _STANDARD, temperature)
 
 
 @lru_cache(maxsize=64)

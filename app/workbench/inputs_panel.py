@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from PySide6.QtCore import Qt
 from PySide6.QtWidgets import QComboBox, QHBoxLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
 
 from app.session.appraisal import Appraisal
 from app.session.commands import Describe, SetValue
+from app.session.curves import Source
 from app.session.fields import FIELD_BY_KEY
 from app.session.light import light_named
 from app.session.outcome import Outcome
@@ -44,6 +47,7 @@ class InputsPanel(QScrollArea):
         self.fields: dict[str, NumberField] = {}
         self._troubled = False
         self._stacks_shown = 0
+        self._sources: Mapping[str, Source] = {}
         column = QVBoxLayout(self._page)
         column.setContentsMargins(10, 4, 10, 8)
         column.setSpacing(3)
@@ -55,6 +59,10 @@ class InputsPanel(QScrollArea):
                 self._add_spectrum(column)
             for key in keys:
                 self._add_field(column, key)
+        self.slanted = QLabel("Slanted: read off curves")
+        self.slanted.setProperty("origin", "curve")
+        self.slanted.hide()
+        column.addWidget(self.slanted)
         self._add_stacks(column)
         column.addStretch(1)
         self.setWidget(self._page)
@@ -156,9 +164,18 @@ class InputsPanel(QScrollArea):
             self.stacks.setText(f"Partial stacks ({count})…" if count else "Partial stacks…")
         for key, field in self.fields.items():
             field.show_value(entry.values[key])
+        if entry.sources is not self._sources:
+            self._show_sources(entry.sources)
         troubled, self._troubled = self._troubled, bool(appraisal.problems)
         if troubled or self._troubled:
             self._show_problems(appraisal, gently=outcome.picture is None)
+
+    def _show_sources(self, sources: Mapping[str, Source]) -> None:
+        """Mark what was read off curves."""
+        self._sources = sources
+        for key, field in self.fields.items():
+            field.show_source(sources.get(key))
+        self.slanted.setVisible(bool(sources))
 
     def _show_problems(self, appraisal: Appraisal, gently: bool) -> None:
         for key, field in self.fields.items():

@@ -10,11 +10,19 @@ from PySide6.QtWidgets import QHBoxLayout, QLabel, QLineEdit, QSlider, QVBoxLayo
 
 from app.files.numbers import NumberError, write_number
 from app.session.appraisal import Problem
+from app.session.curves import Source
 from app.session.fields import Field
 from app.session.state import Unread, Value
 from physics.checks import Severity
 
 _SLIDER_STEPS = 1000
+_SOURCES: dict[Source, str] = {
+    "sweep": "the J–V sweep",
+    "fit": "the one-diode fit to the sweep; its uncertainty stands on the tab Fit",
+    "inflection": "the EQE: its inflection",
+    "edge mean": "the EQE: the mean of its edge",
+    "light series": "the light-intensity series",
+}
 
 
 def slider_value(field: Field, position: int) -> float:
@@ -101,6 +109,7 @@ class NumberField(QWidget):
         self._touched = True  # what is shown may not be what the session holds
         self._typed_in = False  # the text is the user's
         self._problem: tuple[Problem | None, bool] = (None, False)
+        self._source: Source | None = None
         self.label = QLabel(field.symbol)
         self.entry = Entry()
         self.unit = QLabel(field.unit)
@@ -160,6 +169,17 @@ class NumberField(QWidget):
             if position != self.slider.value():
                 self.slider.setValue(position)
 
+    def show_source(self, source: Source | None) -> None:
+        """Mark a value that was read off a curve, and say of which kind."""
+        if source == self._source:
+            return
+        self._source = source
+        tip = self.label.toolTip()
+        told = "" if source is None else f"Read off {_SOURCES[source]}. Typing over it takes its place."
+        self.entry.setToolTip(f"{told}\n{tip}" if told else tip)
+        self.entry.setAccessibleDescription(told)
+        self._set_property(self.entry, "origin", "" if source is None else "curve")
+
     def show_problem(self, problem: Problem | None, gently: bool = False) -> None:
         """Tell what is wrong beside the field; `gently` where a missing number is only not there yet."""
         shown = (problem, gently)
@@ -182,8 +202,12 @@ class NumberField(QWidget):
     @staticmethod
     def _mark(widget: QWidget, trouble: str) -> None:
         """Set the property that the style sheet colours by."""
-        if widget.property("trouble") != trouble:
-            widget.setProperty("trouble", trouble)
+        NumberField._set_property(widget, "trouble", trouble)
+
+    @staticmethod
+    def _set_property(widget: QWidget, name: str, value: str) -> None:
+        if widget.property(name) != value:
+            widget.setProperty(name, value)
             widget.style().unpolish(widget)
             widget.style().polish(widget)
 

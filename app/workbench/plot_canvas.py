@@ -9,11 +9,16 @@ from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPen, QResizeEvent, QTra
 from PySide6.QtWidgets import QGraphicsItem, QGraphicsSimpleTextItem, QWidget
 
 from app.figures.fonts import chart_font
-from app.figures.spec import Mark, PlotSpec, Series
+from app.figures.spec import Mark, PlotSpec, Series, Side, dot_scale
 from app.workbench.theme import Theme
 from physics.units import Array
 
-_DASHES = {"solid": Qt.PenStyle.SolidLine, "dashed": Qt.PenStyle.DashLine, "dotted": Qt.PenStyle.DotLine}
+_DASHES = {
+    "solid": Qt.PenStyle.SolidLine,
+    "dashed": Qt.PenStyle.DashLine,
+    "dotted": Qt.PenStyle.DotLine,
+    "none": Qt.PenStyle.NoPen,
+}
 _SYMBOLS = {"circle": "o", "square": "s", "diamond": "d", "triangle": "t1"}
 _LABEL_PX = 12
 _LEFT = 46.0  # width of the left axis [px]
@@ -24,6 +29,16 @@ def _same(before: Array, now: Array) -> bool:
     return before is now or np.array_equal(before, now, equal_nan=True)
 
 
+def _shift(side: Side, width: float, height: float) -> tuple[float, float]:
+    """Where a text of a size begins, as seen from its mark [px]."""
+    if side == "n":
+        return -width / 2, -height - 6.0
+    if side == "s":
+        return -width / 2, 7.0
+    dx = 7.0 if "e" in side else -width - 7.0
+    return dx, -height - 4.0 if "n" in side else 4.0 if "s" in side else -height / 2
+
+
 class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annotations
     """Draws a `PlotSpec`. The wheel zooms and dragging moves; a double click shows the whole plot again."""
 
@@ -32,6 +47,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         super().__init__(parent)
         self._theme = theme
         self._ranges: tuple[tuple[float, float], tuple[float, float]] | None = None
+        self._room = (0.0, 0.0)  # inside the axes [px]
         self._names: tuple[tuple[tuple[float, str], ...], ...] = ((), ())
         self._curves: dict[str, pg.PlotCurveItem] = {}
         self._marks: dict[str, pg.ScatterPlotItem] = {}
@@ -54,7 +70,8 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             axis.setTickDensity(1.6)
         item.getAxis("left").setWidth(_LEFT)
         item.getAxis("bottom").setHeight(36)
-        self.setMinimumSize(180, 130)
+        self.setMinimumSize(180, 100)
+        self.getViewBox().sigResized.connect(self._place_labels)
         self.scene().sigMouseClicked.connect(self._clicked)
 
     def show_spec(self, spec: PlotSpec) -> None:
@@ -130,7 +147,7 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
         if series.markers:
             ink = self._theme.palette.tones[series.role].ink
             curve.setSymbol("o")
-            curve.setSymbolSize(6)
+            curve.setSymbolSize(6.0 * dot_scale(series))
             curve.setSymbolPen(pg.mkPen(None))
             curve.setSymbolBrush(pg.mkBrush(ink))
 
@@ -158,22 +175,41 @@ class PlotCanvas(pg.PlotWidget):  # type: ignore[misc]  # pyqtgraph has no annot
             dot.setData([mark.x], [mark.y])
         if label.text() != mark.label:
             label.setText(mark.label)
-        box = label.boundingRect()
-        right, left, above, below = 7.0, -box.width() - 7.0, -box.height() - 4.0, 4.0
-        shift = {
-            "n": (-box.width() / 2, above - 2),
-            "s": (-box.width() / 2, below + 3),
-            "e": (right, -box.height() / 2),
-            "w": (left, -box.height() / 2),
-            "ne": (right, above),
-            "nw": (left, above),
-            "se": (right, below),
-            "sw": (left, below),
-        }[mark.side]
-        label.setTransform(QTransform.fromTranslate(*shift))
-        label.setPos(mark.x, mark.y)
+        self._place_label(mark, label)
         dot.setVisible(True)
         label.setVisible(True)
+
+    def _place_labels(self) -> None:
+        """Place all texts anew for the room there is now."""
+        view = self.getViewBox()
+        self._room = (view.width(), view.height())
+        for mark in () if self._spec is None else self._spec.marks:
+            if mark.key in self._labels:
+                self._place_label(mark, self._labels[mark.key])
+
+    def _place_label(self, mark: Mark, label: QGraphicsSimpleTextItem) -> None:
+        """Put a text on its side of its mark, and inside the frame."""
+        box = label.boundingRect()
+        shift = self._inside(mark, box.width(), box.height())
+        label.setTransform(QTransform.fromTranslate(*shift))
+        label.setPos(mark.x, mark.y)
+
+    def _inside(self, mark: Mark, width: float, height: float) -> tuple[float, float]:
+        """Where a text of a size begins, as seen from its mark [px], inside the frame of the whole plot."""
+        side = mark.side
+        across, down = self._room
+        if self._ranges is None or width >= across or height >= down:
+            return _shift(side, width, height)
+        (left, right), (bottom, top) = self._ranges
+        x, y = (mark.x - left) / (right - left) * across, (top - mark.y) / (top - bottom) * down
+        if side == "n" and y < height - 2.0:  # no room above, and lower down it would hide the mark
+            side = "sw"
+        dx, dy = _shift(side, width, height)
+        if 0.0 <= x <= across:
+            dx = min(max(dx, -x), across - width - x)
+        if 0.0 <= y <= down:
+            dy = min(max(dy, -y), down - height - y)
+        return dx, dy
 
     def _hide_missing(self, spec: PlotSpec) -> None:
         series, marks = {s.key for s in spec.series}, {m.key for m in spec.marks}

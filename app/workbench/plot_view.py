@@ -8,13 +8,17 @@ from typing import TYPE_CHECKING
 from PySide6.QtGui import QColor, QResizeEvent
 from PySide6.QtWidgets import QLabel, QSizePolicy, QVBoxLayout, QWidget
 
+from app.figures.fonts import chart_font
 from app.figures.spec import PlotSpec
+from app.wording import THIN
 from app.workbench.theme import Heading, Theme
 
 if TYPE_CHECKING:
     from app.workbench.plot_canvas import PlotCanvas
 
-_STROKES = {"solid": "━━", "dashed": "╍╍", "dotted": "┄┄"}
+_STROKES = {"solid": "━━", "dashed": "╍╍", "dotted": "┄┄", "none": "●"}
+_KEY_PX = 11
+_MOST_LINES = 4
 
 
 class PlotView(QWidget):
@@ -36,6 +40,7 @@ class PlotView(QWidget):
             label.setMinimumHeight(label.fontMetrics().height() + 2)
             label.setSizePolicy(QSizePolicy.Policy.Ignored, QSizePolicy.Policy.Fixed)
         self.key.setWordWrap(True)
+        self.key.setFont(chart_font(_KEY_PX, hinted=True))
         self._column = QVBoxLayout(self)
         self._column.setContentsMargins(8, 4, 8, 4)
         self._column.setSpacing(0)
@@ -75,22 +80,23 @@ class PlotView(QWidget):
             self._show_key(spec)
 
     def _show_key(self, spec: PlotSpec) -> None:
-        """One line that names the curves by colour and stroke."""
+        """Name the curves by colour and stroke, and say what the plot tells in figures."""
         tones = self._theme.palette.tones
         parts = [
-            f'<nobr><span style="color:{tones[s.role].fill if s.filled else tones[s.role].ink}">'
-            f"{'■' if s.filled else _STROKES[s.dash]}</span>&nbsp;{escape(s.label)}</nobr>"
+            f'<span style="color:{tones[s.role].fill if s.filled else tones[s.role].ink}">'
+            f"{'■' if s.filled else _STROKES[s.dash]}</span>&nbsp;{_whole(s.label)}"
             for s in spec.series
             if s.label
         ]
-        self.key.setText("&nbsp; ".join(parts))
+        note = f"<br>{_held(spec.note)}" if spec.note else ""
+        self.key.setText("&nbsp; ".join(parts) + note)
         self._fit_key()
 
     def _fit_key(self) -> None:
-        """Give the key the lines that it needs, up to three."""
+        """Give the key the lines that it needs, up to four."""
         line = self.key.fontMetrics().height()
         lines = self.key.heightForWidth(max(self.width() - 16, 1)) // line
-        self.key.setFixedHeight(min(max(lines, 1), 3) * line + 4)
+        self.key.setFixedHeight(min(max(lines, 1), _MOST_LINES) * line + 4)
 
     def resizeEvent(self, event: QResizeEvent) -> None:
         """Set the key anew for the width."""
@@ -108,4 +114,14 @@ class PlotView(QWidget):
 
 
 def _labels(spec: PlotSpec) -> list[str]:
-    return [series.label for series in spec.series]
+    return [spec.note, *(series.label for series in spec.series)]
+
+
+def _whole(label: str) -> str:
+    """A label that no line break parts, neither at a blank nor at a stroke."""
+    return _held(label).replace(" ", "&nbsp;").replace("/", "/&#8288;")
+
+
+def _held(text: str) -> str:
+    """A text in which numbers stay with their units: rich text takes a thin space for a plain one."""
+    return escape(text).replace(THIN, "&nbsp;")

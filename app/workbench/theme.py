@@ -35,6 +35,7 @@ class Theme(QObject):
             f'QLabel[trouble="refused"] {{ color: {refused}; }}'
             f'QLabel[trouble="missing"] {{ color: {self.palette.muted}; }}'
             f'QLabel[trouble="doubtful"] {{ color: {doubtful}; }}'
+            f'[origin="curve"] {{ color: {self.palette.tones["voltage"].ink}; font-style: italic; }}'
             f'QLineEdit[trouble="refused"] {{ border: 2px solid {refused}; border-radius: 3px; }}'
             f'QLineEdit[trouble="doubtful"] {{ border: 2px solid {doubtful}; border-radius: 3px; }}'
         )

@@ -14,9 +14,9 @@ from app.figures.curve_plots import (
     fit_plot_of,
     plus_minus,
     series_plot_of,
-    spectrum_plot_of,
 )
 from app.figures.export import image
+from app.figures.photon_plot import spectrum_plot_of
 from app.figures.plot_parts import decades
 from app.figures.plots import jv_plot_of
 from app.figures.presets import PRESETS
@@ -27,6 +27,7 @@ from app.session.curves import Curves, Sweep
 from app.session.outcome import Picture, picture_of
 from app.session.stacks import NO_STACKS, Reading, StackReadings
 from app.session.state import EMPTY_VALUES, CellEntry, Choices
+from app.wording import unbroken
 from physics.diode import Diode
 from physics.light_series import LightSeries
 from physics.quantum import Curve
@@ -147,7 +148,7 @@ def test_the_residuals_are_those_of_the_fit() -> None:
     assert np.nanstd(residual.y) == pytest.approx(10.0, rel=0.2)  # the noise put in, 0.01 mA cm⁻²
     assert _series(spec, "upper").y[0] == pytest.approx(20.0, rel=0.2)
     assert spec is not None
-    found = re.findall(r"= ([\d.]+) ± ([\d.]+)", spec.title)
+    found = re.findall(r"=\s([\d.]+)\s±\s([\d.]+)", spec.title)
     for (value, u), true in zip(found, (1.4, 2.0, 2000.0), strict=True):
         assert abs(float(value) - true) < 3.0 * float(u)
     jv = jv_plot_of(PICTURE)
@@ -161,7 +162,8 @@ def test_what_a_sweep_does_not_hold_is_said() -> None:
     picture = _picture(replace(CURVES, sweeps=(straight,)), ff=25.1, voc=1.0, jsc=20.0)
     spec = fit_plot_of(picture)
     assert spec is not None
-    assert "n cannot be told" in spec.title
+    assert unbroken("n cannot be told") in spec.title
+    assert unbroken("n cannot be told") in spec.note
 
 
 def test_the_slope_of_the_series_is_the_ideality() -> None:

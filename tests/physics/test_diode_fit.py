@@ -10,7 +10,7 @@ from pvlib.ivtools.sde import fit_sandia_simple
 from pvlib.pvsystem import i_from_v
 
 from physics.diode_curve import DiodeCurve, rough_curve
-from physics.diode_fit import DiodeFit, fit_one_diode
+from physics.diode_fit import DiodeFit, at_temperature, fit_one_diode
 from physics.diode_parameters import ORDER, change
 
 from .sweeps import VT, T, Truth, precise_curves, random_truth, sweep
@@ -321,3 +321,23 @@ def test_random_shapes_never_break_it() -> None:
         assert fit.message or fit.converged
         for parameter in fit.parameters.values():
             assert parameter.low95 <= parameter.high95
+
+
+@pytest.mark.parametrize("temperature", [250.0, 298.15, 340.0])
+def test_a_fit_read_at_another_temperature_is_the_fit_at_that_temperature(temperature: float) -> None:
+    v, j = _noisy()
+    read, direct = at_temperature(fit_one_diode(v, j, T), T, temperature), fit_one_diode(v, j, temperature)
+    for name in NAMES:
+        one, other = read.parameters[name], direct.parameters[name]
+        assert one.status == other.status
+        for mine, theirs in ((one.value, other.value), (one.u, other.u), (one.low95, other.low95)):
+            assert mine == pytest.approx(theirs, rel=1e-12)
+    np.testing.assert_allclose(read.covariance, direct.covariance, rtol=1e-9)
+    np.testing.assert_array_equal(read.residuals, direct.residuals)
+
+
+def test_a_refused_fit_stays_refused_at_another_temperature() -> None:
+    refused = fit_one_diode([0.0, 1.0], [1.0, 0.0], T)
+    assert at_temperature(refused, T, 320.0) is refused
+    with pytest.raises(ValueError, match="positive number of kelvin"):
+        at_temperature(refused, T, 0.0)

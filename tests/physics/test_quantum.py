@@ -11,7 +11,7 @@ from scipy.integrate import quad, simpson
 
 from physics.emission import BlackBody, photon_current, thermal_flux
 from physics.limit import detailed_balance_limit
-from physics.quantum import Curve, Tail, collected_current, radiative_current
+from physics.quantum import Curve, Tail, collected_current, emission_density, radiative_current
 from physics.spectrum import reference_spectrum
 from physics.units import EV_NM, Array
 
@@ -130,3 +130,19 @@ def test_an_urbach_tail_of_15_mev_costs_21_mv() -> None:
 def test_what_is_no_curve_is_refused(wavelength: list[float], value: list[float]) -> None:
     with pytest.raises(ValueError, match="quantum efficiency"):
         Curve(np.array(wavelength), np.array(value))
+
+
+def test_the_emission_density_is_the_integrand() -> None:
+    tail = Tail(start=1.4, anchor=0.2, slope=0.015)
+    curve = Curve(np.array([400.0, EV_NM / 1.4]), np.array([0.9, 0.2]))
+    below, above = np.linspace(0.9, 1.4, 20_001)[:-1], np.linspace(1.4, EV_NM / 400.0, 100_001)
+    parts = [
+        simpson(emission_density(tail.at, below, 298.15), x=below),
+        simpson(emission_density(curve.at, above, 298.15), x=above),
+    ]
+    whole, extrapolated = radiative_current(curve, 298.15, tail)
+    assert parts[0] == pytest.approx(extrapolated, rel=2e-3)  # the last step of the tail is left out
+    assert sum(parts) == pytest.approx(whole, rel=2e-3)
+    # One value by hand: q · 2π/(h³c²) · E²/(exp(E/kT) − 1) at 1.5 eV, in mA cm⁻² eV⁻¹.
+    by_hand = 0.5 * e * 2 * np.pi / (h**3 * c**2) * (1.5 * e) ** 2 / np.expm1(1.5 * e / (k * 298.15)) * e * 0.1
+    assert float(emission_density(lambda at: np.full(at.shape, 0.5), 1.5, 298.15)) == pytest.approx(by_hand, rel=1e-9)

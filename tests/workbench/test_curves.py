@@ -272,3 +272,19 @@ def test_the_figures_may_come_from_the_other_sweep(empty_window: Window) -> None
     again = window.session.state.cell
     assert again is not None
     assert dict(again.values) == dict(forward.values)
+
+
+def test_what_was_read_off_a_curve_says_so(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    _open(window, _write_eqe(tmp_path / "eqe.txt"))
+    _open(window, _write_sweep(tmp_path / "sweep.txt"))
+    fields = window.inputs.fields
+    assert "the EQE: its inflection" in fields["gap"].entry.toolTip()
+    assert "one-diode fit" in fields["rs"].entry.accessibleDescription()
+    assert fields["voc"].entry.font().italic()
+    assert not fields["temperature"].entry.font().italic()
+    assert window.inputs.slanted.isVisible()
+    fields["rs"].asked.emit(3.0)
+    settle()
+    assert "one-diode fit" not in fields["rs"].entry.toolTip()
+    assert not fields["rs"].entry.font().italic()
