@@ -52,17 +52,21 @@ class InputsPanel(QScrollArea):
         column.setContentsMargins(10, 4, 10, 8)
         column.setSpacing(3)
         self._add_texts(column)
+        self.slanted = QLabel("slanted: read off curves")
+        self.slanted.setProperty("origin", "curve")
+        self.slanted.hide()
         for title, keys in _GROUPS:
             column.addSpacing(6)
-            column.addWidget(Heading(title))
+            head = QHBoxLayout()
+            head.addWidget(Heading(title))
+            if "voc" in keys:
+                head.addStretch(1)
+                head.addWidget(self.slanted)
+            column.addLayout(head)
             if "irradiance" in keys:
                 self._add_spectrum(column)
             for key in keys:
                 self._add_field(column, key)
-        self.slanted = QLabel("Slanted: read off curves")
-        self.slanted.setProperty("origin", "curve")
-        self.slanted.hide()
-        column.addWidget(self.slanted)
         self._add_stacks(column)
         column.addStretch(1)
         self.setWidget(self._page)
