@@ -187,3 +187,31 @@ def test_listeners_are_told_once_a_change() -> None:
     session.redo()
     assert len(calls) == 3
     assert calls[0] == calls[2] == replace(calls[0])
+
+
+def test_what_arrives_late_is_there_in_every_step() -> None:
+    session = Session()
+    session.do(AddCells((CellEntry(0, "a"), CellEntry(0, "b"))))
+    first, second = session.state.cells
+    session.do(SetValue(first.ident, "voc", 1.0))
+    session.settle()
+    session.do(SetValue(second.ident, "voc", 0.5))
+    session.undo()
+    seen = []
+    session.listen(lambda: seen.append(session.state))
+    session.amend(first.ident, lambda cell: cell.with_value("rs", 2.0))
+    assert len(seen) == 1
+    assert session.undo_name == "change of Voc"
+    assert session.redo_name == "change of Voc"
+    session.redo()
+    assert [cell.values["rs"] for cell in session.state.cells] == [2.0, None]
+    assert [cell.values["voc"] for cell in session.state.cells] == [1.0, 0.5]
+    session.undo()
+    session.undo()
+    assert [cell.values["rs"] for cell in session.state.cells] == [2.0, None]
+    assert session.state.cells[0].values["voc"] is None
+    session.undo()
+    assert session.state.cells == ()
+    session.redo()
+    assert session.state.cells[0].values["rs"] == 2.0
+    session.amend(99, lambda cell: cell.with_value("rs", 3.0))  # of a cell that is no more
