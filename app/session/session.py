@@ -93,6 +93,19 @@ class Session:
         """Show how another line was found."""
         self._become(replace(self._state, line=key))
 
+    def start_with(self, state: State) -> None:
+        """Take another state from outside, such as an opened session; there is nothing to undo in it."""
+        self._done.clear()
+        self._undone.clear()
+        self.settle()
+        # Identities are never used twice: those of the new cells follow on those of the cells that were here before.
+        shift = self._state.next_ident - 1
+        cells = tuple(replace(cell, ident=cell.ident + shift) for cell in state.cells)
+        picked = None if state.picked is None else state.picked + shift
+        if picked is None and cells:
+            picked = cells[0].ident
+        self._become(replace(state, cells=cells, picked=picked, next_ident=state.next_ident + shift))
+
     def start_here(self) -> None:
         """Forget the steps so far: what was opened at the start is nothing to undo, and the first cell is on show."""
         self._done.clear()

@@ -24,6 +24,7 @@ from app.ledger_rows import ledger_csv, ledger_tsv
 from app.session.commands import AddCells, RemoveCell, SetChoices, SetFigures
 from app.session.outcome import Outcome
 from app.session.state import CellEntry, Choices, Value
+from app.session_file import is_session
 from app.workbench.curve_loader import Arrived, CurveLoader, Wanted
 from app.workbench.number_field import ignore_wheel
 
@@ -102,18 +103,22 @@ class Actions(QObject):
         self.copy_table = self._action("Copy ledger as &table", self._copy_table, "Ctrl+Shift+T", picture)
         self.export = self._action("&Export a picture…", self.show_export, "Ctrl+E", picture)
         self.paste_ = self._action("&Paste cells or measured curves", self.paste, standard.Paste)
-        open_ = self._action("&Open cells or measured curves…", self._ask_open, standard.Open)
+        open_ = self._action("&Open session, cells or curves…", self._ask_open, standard.Open)
         inflection = self._action("Gap from the EQE's &inflection", lambda: self._take_gap("inflection"), None, cell)
         mean = self._action("Gap from the EQE's edge &mean", lambda: self._take_gap("edge mean"), None, cell)
         other = self._action("Figures from the next s&weep", self._take_next_sweep, None, cell)
         self.stacks = self._action("Partial &stacks…", self.show_stacks, None, cell)
-        save_shelf = self._action("&Save the shelf as a table…", self._ask_save_shelf, standard.Save, cell)
-        save_ledger = self._action("Save the &ledger as CSV…", self._ask_save_ledger, "Ctrl+Shift+S", picture)
+        files = self._window.files
+        self.save = self._action("&Save session", files.save, standard.Save)
+        save_as = self._action("Save session &as…", files.save_as, "Ctrl+Shift+S")
+        save_shelf = self._action("Save the shelf as a &table…", self._ask_save_shelf, None, cell)
+        save_ledger = self._action("Save the &ledger as CSV…", self._ask_save_ledger, None, picture)
         quit_ = self._action("&Quit", self._window.close, standard.Quit)
         following = self._action("Ne&xt cell", lambda: self._walk(1), "Ctrl+PgDown", cell)
         previous = self._action("&Previous cell", lambda: self._walk(-1), "Ctrl+PgUp", cell)
         help_ = self._action("&Cautions, conventions and keys", self.show_help, standard.HelpContents)
-        self._menu("&File", (open_, save_shelf, None, self.export, save_ledger, None, quit_))
+        menu = self._menu("&File", (open_, self.save, save_as, None, self.export, save_ledger, save_shelf, None, quit_))
+        menu.insertMenu(self.save, files.recent)
         self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table, self.paste_))
         known = (inflection, mean, other, self.stacks)
         self._menu("&Cell", (self.new, self.duplicate, self.remove, None, *known, None, previous, following))
@@ -218,15 +223,22 @@ class Actions(QObject):
 
     def _ask_open(self) -> None:
         names, _ = QFileDialog.getOpenFileNames(
-            self._window, "Open cells or measured curves", "", "Tables (*.csv *.tsv *.txt *.dat);;All files (*)"
+            self._window,
+            "Open a session, cells or measured curves",
+            "",
+            "Sessions and tables (*.gapledger *.csv *.tsv *.txt *.dat);;All files (*)",
         )
         for name in names:
             self.open_file(Path(name))
 
     def open_file(self, path: Path) -> None:
-        """Put the cells of a table on the shelf, or measured curves into the cell on show."""
+        """Open a session, put the cells of a table on the shelf, or measured curves into the cell on show."""
         try:
-            self._take_data(load_bytes(path), path.name, path.parent)
+            data = load_bytes(path)
+            if is_session(data):
+                self._window.files.open_data(data, path)
+            else:
+                self._take_data(data, path.name, path.parent)
         except TableError as fault:
             self._say(str(fault), lasting=True)
 
@@ -369,7 +381,10 @@ class Actions(QObject):
     def _take_arrived(self, arrived: Arrived) -> None:
         self._to_come -= 1
         self._doubts += arrived.sentences
+        clean = not self._window.files.unsaved
         self._session.amend(arrived.before.ident, lambda now: merged(now, arrived.before, arrived.after))
+        if clean:  # what was asked for with the table is no change of the user's
+            self._window.files.mark_clean()
         if self._to_come >= _WORTH_TELLING:
             self._say(f"Reading curves: {self._to_come} cells to come.")
 

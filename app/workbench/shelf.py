@@ -90,6 +90,7 @@ class Shelf(QListView):
 
     def __init__(self, outcomes: Outcomes, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        self._showing = False
         self._model = ShelfModel(outcomes, self)
         self.setModel(self._model)
         self.setAccessibleName("Shelf of cells")
@@ -99,17 +100,19 @@ class Shelf(QListView):
         self.selectionModel().currentChanged.connect(self._moved)
 
     def _moved(self, current: QModelIndex, previous: QModelIndex) -> None:
-        if current.isValid() and current.row() < len(self._model.cells):
+        if not self._showing and current.isValid() and current.row() < len(self._model.cells):
             self.cell_picked.emit(self._model.cells[current.row()].ident)
 
     def show_state(self, state: State) -> None:
         """Show the shelf with its picked cell."""
+        self._showing = True  # where rows come and go the list picks another one by itself, which is nobody's wish
         for row in self._model.show_cells(state.cells):
             self.update(self._model.index(row))
         if state.picked is not None:
             row = state.position(state.picked)
             if self.currentIndex().row() != row:
                 self.setCurrentIndex(self._model.index(row))
+        self._showing = False
 
     def keyPressEvent(self, event: object) -> None:
         """Delete removes the cell on show."""

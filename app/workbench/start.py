@@ -49,8 +49,9 @@ def make_window(arguments: Sequence[str]) -> Window:
         window.actions_.open_file(demo_path() if argument == "demo" else Path(argument))
     if "demo" in arguments:
         window.notices.say("Demo: these cells, and the group that made them, are invented.")
-    if arguments:
+    if arguments and window.files.path is None:
         session.start_here()
+    window.files.mark_clean()
     window.refresh()
     return window
 
@@ -61,6 +62,7 @@ def open_window(arguments: Sequence[str]) -> int:
     app = application(arguments)
     window = make_window(arguments)
     sys.excepthook = lambda kind, fault, trace: _tell(window, kind, fault, trace)
+    window.files.asks = True
     window.show()
     return app.exec()
 

@@ -21,6 +21,7 @@ from app.workbench.inputs_panel import InputsPanel
 from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
 from app.workbench.plot_view import PlotView
+from app.workbench.session_files import SessionFiles
 from app.workbench.shelf import Shelf
 from app.workbench.theme import Heading, Theme
 from app.workbench.waterfall_view import WaterfallView
@@ -51,6 +52,7 @@ class Window(QMainWindow):
         self.explanation = ExplainPanel(self.theme)
         self.notices = NoticeBar()
         self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
+        self.files = SessionFiles(self)
         self.actions_ = Actions(self)
         self.setCentralWidget(self._lay_out())
         self.setAcceptDrops(True)
@@ -175,8 +177,7 @@ class Window(QMainWindow):
         state, outcome = self.session.state, self.outcomes.current()
         picture, line = outcome.picture, state.line
         self.shelf.show_state(state)
-        name = "" if state.cell is None else state.cell.name
-        self.setWindowTitle(f"{name} – Gapledger" if name else "Gapledger")
+        self.files.show_title()
         for head in self._heads:
             head.mark_stale(outcome.stale and picture is not None)
         self.table.show_rows(() if picture is None else ledger_rows(picture), line)
@@ -200,13 +201,16 @@ class Window(QMainWindow):
             event.acceptProposedAction()
 
     def dropEvent(self, event: QDropEvent) -> None:
-        """Open what was dropped: tables of cells, or curves of the cell on show."""
+        """Open what was dropped: sessions, tables of cells, or curves of the cell on show."""
         for url in event.mimeData().urls():
             if url.isLocalFile():
                 self.actions_.open_file(Path(url.toLocalFile()))
 
     def closeEvent(self, event: QCloseEvent) -> None:
-        """Close the windows beside this one, too."""
+        """Close the windows beside this one, too, unless there are changes that the user wants to keep."""
+        if not self.files.may_leave():
+            event.ignore()
+            return
         self.actions_.close_panels()
         super().closeEvent(event)
 

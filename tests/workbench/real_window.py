@@ -32,6 +32,7 @@ def main() -> int:
         window = make(arguments)
         window.move(0, 0)
         made.append(window)
+        QTimer.singleShot(0, lambda: setattr(window.files, "asks", False))  # nobody is there to answer at the end
         window.waterfall.first_painted.connect(
             lambda: QTimer.singleShot(800, lambda: print(json.dumps(_place(window, "voc")), flush=True))
         )
