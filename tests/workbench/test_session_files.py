@@ -6,7 +6,7 @@ from pathlib import Path
 
 import pytest
 from PySide6.QtCore import QMimeData, QPointF, Qt, QUrl
-from PySide6.QtGui import QDropEvent
+from PySide6.QtGui import QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox
 
 from app.session.commands import RemoveCell, SetValue
@@ -22,7 +22,11 @@ def _drop(window: Window, path: Path) -> None:
     data = QMimeData()
     data.setUrls([QUrl.fromLocalFile(str(path))])
     place = QPointF(10.0, 10.0)
-    event = QDropEvent(place, Qt.DropAction.CopyAction, data, Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier)
+    buttons = Qt.MouseButton.LeftButton, Qt.KeyboardModifier.NoModifier
+    enter = QDragEnterEvent(place.toPoint(), Qt.DropAction.CopyAction, data, *buttons)
+    QApplication.sendEvent(window, enter)
+    assert enter.isAccepted()
+    event = QDropEvent(place, Qt.DropAction.CopyAction, data, *buttons)
     QApplication.sendEvent(window, event)
     settle()
 
