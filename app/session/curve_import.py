@@ -147,7 +147,7 @@ def _put_figures(take: _Taking, sweep: Sweep, figures: SweepFigures) -> None:
         if estimate is not None:
             take.put(key, estimate.value, "sweep")
     known = [FIELD_BY_KEY[key].symbol for key, estimate in found.items() if estimate is not None]
-    which = f" ({sweep.direction})" if sweep.direction else ""
+    which = f" ({sweep.direction})" if sweep.direction and sweep.direction not in sweep.label.casefold() else ""
     if known:
         take.sentences.append(f"{', '.join(known)} from the sweep {sweep.label or 'of the file'}{which}.")
     if figures.message:

@@ -56,6 +56,7 @@ class Actions(QObject):
         self._loader: CurveLoader | None = None
         self._wanted: list[Wanted] = []  # cells whose curve files are yet to be read
         self._to_come = 0
+        self._going = 0  # cells since the last time that all were read
         self._doubts: list[str] = []  # about curve files that have been read
         self._waiting: list[tuple[MeasuredText, Reading]] = []
         self._memory: ReadingMemory | None = None  # how files of a shape were read the last time
@@ -276,6 +277,8 @@ class Actions(QObject):
 
         text = read_measured(data, source)
         choice = self.memory.recall(shape_key(text))
+        if forgotten := self.memory.fault():
+            self._say(forgotten, lasting=True)
         self._waiting.append((text, guess(text) if choice is None else remembered(text, choice)))
         if self._import is None or not self._import.isVisible():
             self._preview_next()
@@ -303,7 +306,7 @@ class Actions(QObject):
         source = panel.text.source
         cell = self._session.state.cell or CellEntry(0, Path(source).stem)
         try:
-            command, sentences = taken(panel.curves, cell, source)
+            command, sentences = taken(panel.chosen_first(), cell, source)
         except TableError as fault:
             self._say(str(fault), lasting=True)
         else:
@@ -350,11 +353,14 @@ class Actions(QObject):
             first = self._session.state.next_ident
             self._session.do(AddCells(shelf.entries, "opening of a table"))
             cells = {cell.ident: cell for cell in self._session.state.cells}
-            self._wanted += [
+            wanted = [
                 Wanted(cells[first + at], row, line, folder)
                 for at, (row, line) in enumerate(zip(shelf.rows, shelf.lines, strict=True))
                 if names_curves(row)
             ]
+            self._wanted += wanted
+            if wanted:  # the curves will have their own notice, over that of the table
+                self._doubts += shelf.left_out
         sentence = f"{count} cell{'' if count == 1 else 's'} taken from {source}."
         if shelf.left_out:
             sentence = f"{sentence} Left out: {_some(shelf.left_out)}"
@@ -376,6 +382,7 @@ class Actions(QObject):
             self._loader.arrived.connect(self._take_arrived)
             self._loader.finished.connect(self._tell_arrived)
         self._to_come += len(wanted)
+        self._going += len(wanted)
         self._loader.load(wanted)
 
     def _take_arrived(self, arrived: Arrived) -> None:
@@ -389,9 +396,14 @@ class Actions(QObject):
             self._say(f"Reading curves: {self._to_come} cells to come.")
 
     def _tell_arrived(self) -> None:
+        if self._to_come:
+            return
         doubts, self._doubts = self._doubts, []
+        going, self._going = self._going, 0
         if doubts:
             self._say(f"Curves read. Please check: {_some(doubts)}", lasting=True)
+        elif going > _WORTH_TELLING:
+            self._say(f"The curves of {going} cells have been read.")
 
     def _ask_save(self, title: str, name: str, text: Callable[[], str]) -> None:
         chosen, _ = QFileDialog.getSaveFileName(self._window, title, name, "Comma-separated table (*.csv)")

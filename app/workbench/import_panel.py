@@ -75,7 +75,8 @@ class Understood:
 def understood(curve: MeasuredCurve) -> Understood:
     """A curve in the units in which it will be used."""
     if isinstance(curve, JvSweep):
-        how = " · ".join(part for part in (curve.direction, {False: "dark", True: "lit", None: ""}[curve.lit]) if part)
+        told = (curve.direction, {False: "dark", True: "lit", None: ""}[curve.lit])
+        how = " · ".join(word for word in told if word and word not in curve.label.casefold())
         unit = "mA cm⁻²" if curve.is_density else "mA"
         title = f"{curve.label} ({how})" if how else curve.label
         return Understood(title, ("V", unit), curve.voltage, curve.current)
@@ -117,6 +118,11 @@ class ImportPanel(QDialog):
         self.decimal.setAccessibleName("Decimal mark")
         self.decimal.activated.connect(self._choose_decimal)
         ignore_wheel(self.decimal)
+        self.sweep = QComboBox()
+        self.sweep.setAccessibleName("Sweep that the figures are read off")
+        ignore_wheel(self.sweep)
+        self._from = QLabel("   Figures from")
+        self._from.setBuddy(self.sweep)
         self.traces = self._table("How each curve is read")
         self.preview = self._table("First numbers as understood")
         self.questions, self.fault = QLabel(), QLabel()
@@ -148,6 +154,8 @@ class ImportPanel(QDialog):
         mark.setBuddy(self.decimal)
         what.addWidget(mark)
         what.addWidget(self.decimal)
+        what.addWidget(self._from)
+        what.addWidget(self.sweep)
         what.addStretch(1)
         column = QVBoxLayout(self)
         column.addLayout(what)
@@ -162,10 +170,16 @@ class ImportPanel(QDialog):
     def show_file(self, text: MeasuredText, reading: Reading) -> None:
         """Show a file with the reading it is understood by."""
         self.text, self.reading = text, reading
+        self.sweep.clear()
         self.setWindowTitle(f"{text.source} – what was understood")
         self._fill()
         self.show()
         self.raise_()
+
+    def chosen_first(self) -> tuple[MeasuredCurve, ...]:
+        """The curves as understood, the sweep that the figures are to be read off before the others."""
+        at = self.sweep.currentData()
+        return self.curves if at is None else (self.curves[at], *self.curves[:at], *self.curves[at + 1 :])
 
     def take(self) -> None:
         """Take the file as it is shown."""
@@ -254,7 +268,21 @@ class ImportPanel(QDialog):
         self.questions.setText("\n".join(f"▲ {question}" for question in questions))
         self.questions.setVisible(bool(questions))
         self.take_button.setEnabled(not fault)
-        self._show_numbers([understood(curve) for curve in self.curves])
+        shown = [understood(curve) for curve in self.curves]
+        self._offer_sweeps(shown)
+        self._show_numbers(shown)
+
+    def _offer_sweeps(self, shown: list[Understood]) -> None:
+        """Offer to read the figures off any of several sweeps under light; off the first, if nobody chooses."""
+        place, chosen = self.sweep.currentIndex(), self.sweep.currentText()
+        self.sweep.clear()
+        for at, curve in enumerate(self.curves):
+            if isinstance(curve, JvSweep) and curve.lit is not False:
+                self.sweep.addItem(shown[at].title or f"curve {at + 1}", at)
+        same = self.sweep.itemText(place) == chosen  # two may have the same name
+        self.sweep.setCurrentIndex(place if same else max(self.sweep.findText(chosen), 0))
+        for widget in (self._from, self.sweep):
+            widget.setVisible(self.sweep.count() > 1)
 
     def _show_numbers(self, curves: list[Understood]) -> None:
         self.preview.clear()

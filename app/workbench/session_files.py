@@ -17,6 +17,7 @@ from app.session.state import State
 from app.session_file import SUFFIX, opened, save
 
 if TYPE_CHECKING:
+    from app.journal import Found
     from app.workbench.window import Window
 
 _FILTER = f"Sessions (*{SUFFIX});;All files (*)"
@@ -133,6 +134,14 @@ class SessionFiles(QObject):
         self._remember(path)
         count = len(state.cells)
         self._window.notices.say(f"{count} cell{'' if count == 1 else 's'} opened from {path.name}.")
+
+    def take_back(self, found: Found) -> None:
+        """Show work that an earlier run left behind; it counts as unsaved."""
+        self._session.start_with(found.state)
+        self.path = found.file
+        self._clean = State()
+        self.show_title()
+        self._window.notices.say(f"Taken back as of {found.when:%H:%M:%S}. Save it to keep it.", lasting=True)
 
     def _remember(self, path: Path) -> None:
         kept = settings()

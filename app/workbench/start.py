@@ -15,6 +15,7 @@ from app.figures.fonts import families
 from app.session.commands import AddCells
 from app.session.session import Session
 from app.session.state import CellEntry, State
+from app.workbench.recovery import journal_folder
 from app.workbench.window import Window
 
 
@@ -63,6 +64,7 @@ def open_window(arguments: Sequence[str]) -> int:
     window = make_window(arguments)
     sys.excepthook = lambda kind, fault, trace: _tell(window, kind, fault, trace)
     window.files.asks = True
+    window.keep_journal(journal_folder())
     window.show()
     return app.exec()
 

@@ -21,6 +21,7 @@ from app.workbench.inputs_panel import InputsPanel
 from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
 from app.workbench.plot_view import PlotView
+from app.workbench.recovery import Recovery
 from app.workbench.session_files import SessionFiles
 from app.workbench.shelf import Shelf
 from app.workbench.theme import Heading, Theme
@@ -53,6 +54,7 @@ class Window(QMainWindow):
         self.notices = NoticeBar()
         self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
         self.files = SessionFiles(self)
+        self.recovery: Recovery | None = None
         self.actions_ = Actions(self)
         self.setCentralWidget(self._lay_out())
         self.setAcceptDrops(True)
@@ -127,6 +129,10 @@ class Window(QMainWindow):
             column.addWidget(widget)
         return column
 
+    def keep_journal(self, folder: Path) -> None:
+        """Keep a journal of unsaved work in a folder, and offer what lies there when the window has shown itself."""
+        self.recovery = Recovery(self, folder)
+
     def refresh(self) -> None:
         """Show the session as it is now.
 
@@ -148,6 +154,8 @@ class Window(QMainWindow):
         for plot in (self.jv_plot, self.gap_plot):
             plot.canvas.update()
         self.actions_.load_curves()
+        if self.recovery is not None:
+            self.recovery.offer()
 
     def _show_charts(self, outcome: Outcome) -> None:
         picture, stale = outcome.picture, outcome.stale
@@ -212,6 +220,8 @@ class Window(QMainWindow):
             event.ignore()
             return
         self.actions_.close_panels()
+        if self.recovery is not None:
+            self.recovery.end()
         super().closeEvent(event)
 
 

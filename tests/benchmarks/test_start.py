@@ -12,6 +12,7 @@ import os
 import statistics
 import subprocess
 import sys
+import tempfile
 import time
 from pathlib import Path
 
@@ -24,7 +25,9 @@ _SCRIPT = Path(__file__).with_name("first_paint.py")
 
 
 def _run(which: str) -> list[dict[str, object]]:
+    home = tempfile.gettempdir()  # whose settings are nobody's
     environment = os.environ | {"PYTHONPATH": str(ROOT), "QT_QPA_PLATFORM": "offscreen"}
+    environment |= {"XDG_CONFIG_HOME": home, "XDG_DATA_HOME": home}
     done = subprocess.run(
         [sys.executable, str(_SCRIPT), str(time.time()), which],
         env=environment, capture_output=True, text=True, timeout=60, check=True,

@@ -36,6 +36,7 @@ def home_of_its_own(tmp_path_factory: pytest.TempPathFactory, monkeypatch: pytes
     """Nothing that is remembered from run to run reaches the real home, or another test."""
     home = tmp_path_factory.mktemp("home")
     monkeypatch.setenv("XDG_CONFIG_HOME", str(home))
+    monkeypatch.setenv("XDG_DATA_HOME", str(home))
     monkeypatch.setenv("HOME", str(home))
     return home
 

@@ -85,6 +85,49 @@ def test_a_table_opened_later_and_a_file_that_is_missing(window: Window, qtbot: 
     assert window.session.undo_name == "opening of a table"
 
 
+def test_it_is_told_how_many_are_to_come_and_what_was_left_out(
+    window: Window, qtbot: QtBot, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (tmp_path / "jv.csv").write_bytes((_FILES / "heron_1_jv.csv").read_bytes())
+    rows = "\n".join(f"cell {k},1.42,jv.csv" for k in range(12))
+    told: list[str] = []
+    say = window.notices.say
+
+    def listen(sentence: str, *, lasting: bool = False) -> None:
+        told.append(sentence)
+        say(sentence, lasting=lasting)
+
+    monkeypatch.setattr(window.notices, "say", listen)
+    for extra, last in (("", "The curves of 12 cells have been read."), ("\n,1.5,", "Line 14: the name is missing.")):
+        (tmp_path / "cells.csv").write_text(f"name,gap_eV,jv_file\n{rows}{extra}\n")
+        told.clear()
+        window.actions_.open_file(tmp_path / "cells.csv")
+        settle()
+        _loaded(window, qtbot)
+        qtbot.waitUntil(lambda last=last: last in told[-1], timeout=5000)  # type: ignore[misc]
+        assert told[0].startswith("12 cells taken from cells.csv.")
+        assert told[1:-1] == [f"Reading curves: {k} cells to come." for k in range(11, 4, -1)]
+
+
+def test_the_window_answers_while_many_are_read(window: Window, qtbot: QtBot, tmp_path: Path) -> None:
+    for name in ("heron_1_jv.csv", "heron_1_eqe.txt"):
+        (tmp_path / name).write_bytes((_FILES / name).read_bytes())
+    rows = "\n".join(f"cell {k},heron_1_jv.csv,heron_1_eqe.txt" for k in range(30))
+    (tmp_path / "cells.csv").write_text(f"name,jv_file,eqe_file\n{rows}\n")
+    ident = window.session.state.cells[0].ident
+    window.actions_.open_file(tmp_path / "cells.csv")
+    window.session.pick(ident)
+    qtbot.waitUntil(lambda: window.actions_._to_come <= 25, timeout=20_000)
+    window.inputs.fields["voc"].asked.emit(1.05)
+    settle()
+    assert window.actions_._to_come > 0  # the change came through while files were still to be read
+    assert window.session.state.cells[0].values["voc"] == 1.05
+    assert window.table._model.rows
+    _loaded(window, qtbot)
+    assert window.session.state.cells[0].values["voc"] == 1.05
+    assert all(cell.curves.eqe is not None for cell in window.session.state.cells if cell.name.startswith("cell "))
+
+
 def test_closing_the_window_leaves_out_what_is_not_begun(window: Window, tmp_path: Path) -> None:
     (tmp_path / "jv.csv").write_bytes((_FILES / "plover_3_jv.txt").read_bytes())
     rows = "\n".join(f"cell {k},1.6,jv.csv" for k in range(200))

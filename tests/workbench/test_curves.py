@@ -6,10 +6,10 @@ from pathlib import Path
 
 import numpy as np
 import pytest
-from PySide6.QtCore import Qt
+from PySide6.QtCore import QStandardPaths, Qt
 from PySide6.QtGui import QAction, QGuiApplication
 from PySide6.QtTest import QTest
-from PySide6.QtWidgets import QComboBox
+from PySide6.QtWidgets import QCheckBox, QComboBox
 
 from app.figures.all_plots import BESIDE
 from app.figures.curve_plots import eqe_plot_of
@@ -288,3 +288,79 @@ def test_what_was_read_off_a_curve_says_so(empty_window: Window, tmp_path: Path)
     settle()
     assert "one-diode fit" not in fields["rs"].entry.toolTip()
     assert not fields["rs"].entry.font().italic()
+
+
+def _combo(panel: ImportPanel, row: int, column: int) -> QComboBox:
+    box = panel.traces.cellWidget(row, column)
+    assert isinstance(box, QComboBox)
+    return box
+
+
+def test_the_preview_offers_the_sweep_that_feeds_the_figures(empty_window: Window) -> None:
+    window = empty_window
+    demo = Path(__file__).parents[2] / "resources" / "demo"
+    window.actions_.open_file(demo / "dunlin_2_jv.txt")
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    assert panel.sweep.isVisible()
+    assert [panel.sweep.itemText(k) for k in range(panel.sweep.count())] == [
+        "light, forward (lit)",
+        "light, reverse (lit)",
+    ]  # a dark sweep has no figures
+    assert panel.sweep.currentIndex() == 0
+    assert panel.chosen_first() == panel.curves
+    panel.sweep.setCurrentIndex(1)
+    light = _combo(panel, 0, 7)
+    light.activated.emit(light.currentIndex())  # something else is looked at again: the choice stays
+    assert panel.sweep.currentIndex() == 1
+    panel.take()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert [sweep.label for sweep in cell.curves.sweeps] == ["light, reverse", "light, forward", "dark"]
+    assert "from the sweep light, reverse." in window.notices.text.text()
+    window.actions_.open_file(demo / "plover_3_eqe.csv")
+    settle()
+    assert panel.sweep.isHidden()
+    panel.reject()
+    window.actions_.open_file(demo / "curlew_5_jv.csv")
+    settle()
+    assert panel.sweep.isVisible()
+    assert panel.sweep.currentIndex() == 0  # another file, another choice
+    panel.reject()
+
+
+def test_with_one_sweep_left_there_is_nothing_to_choose(empty_window: Window) -> None:
+    window = empty_window
+    window.actions_.open_file(Path(__file__).parents[2] / "resources" / "demo" / "plover_3_jv.txt")
+    settle()
+    panel = window.actions_._import
+    assert panel is not None
+    panel.sweep.setCurrentIndex(1)
+    used = panel.traces.cellWidget(1, 0)
+    assert isinstance(used, QCheckBox)
+    used.setChecked(False)
+    assert panel.sweep.isHidden()
+    panel.take()
+    settle()
+    cell = window.session.state.cell
+    assert cell is not None
+    assert cell.values["voc"] == pytest.approx(1.048, abs=1e-3)
+
+
+def test_a_broken_memory_is_told_once(empty_window: Window, tmp_path: Path) -> None:
+    window = empty_window
+    home = Path(QStandardPaths.writableLocation(QStandardPaths.StandardLocation.AppConfigLocation))
+    home.mkdir(parents=True, exist_ok=True)
+    (home / "readings.json").write_text("{ this is none", encoding="utf-8")
+    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    assert "readings.json cannot be read" in window.notices.text.text()
+    window.notices.clear()
+    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    settle()
+    assert window.notices.text.text() == ""
+    panel = window.actions_._import
+    assert panel is not None
+    panel.reject()
+    panel.reject()

@@ -108,7 +108,8 @@ def test_what_cannot_be_opened_changes_nothing(window: Window, tmp_path: Path) -
     _change(window, 0.9)
     before, title = window.session.state, window.windowTitle()
     text = good.read_text(encoding="utf-8")
-    for k, bad in enumerate((text[: len(text) // 2], text.replace('"version": 1', '"version": 7'), text.replace("1.6", "1e999"))):
+    broken = text[: len(text) // 2], text.replace('"version": 1', '"version": 7'), text.replace("1.6", "1e999")
+    for k, bad in enumerate(broken):
         path = tmp_path / f"bad{k}.gapledger"
         path.write_text(bad, encoding="utf-8")
         window.actions_.open_file(path)

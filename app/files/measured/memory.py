@@ -25,6 +25,7 @@ class ReadingMemory:
     def __init__(self, path: Path | None) -> None:
         self._path = path
         self._known: dict[str, str] | None = None
+        self._fault = ""
 
     def recall(self, shape: str) -> Reading | None:
         """The last choice for files of a shape, or None."""
@@ -35,6 +36,12 @@ class ReadingMemory:
             return reading_from_json(text)
         except ValueError:  # from another version, or tampered with: as if it had never been
             return None
+
+    def fault(self) -> str:
+        """Sentence about a file that is not understood, the first time it is asked for; else an empty text."""
+        self._readings()
+        fault, self._fault = self._fault, ""
+        return fault
 
     def keep(self, shape: str, reading: Reading) -> str:
         """Remember a choice; a sentence where it could not be written down for the next run."""
@@ -56,17 +63,23 @@ class ReadingMemory:
 
     def _readings(self) -> dict[str, str]:
         if self._known is None:
-            self._known = {} if self._path is None else _read(self._path)
+            found = {} if self._path is None else _read(self._path)
+            if found is None:
+                self._fault = f"How files were read before is forgotten: {self._path} cannot be read."
+            self._known = found or {}
         return self._known
 
 
-def _read(path: Path) -> dict[str, str]:
-    """What a file remembers; nothing where it is missing or no such file."""
+def _read(path: Path) -> dict[str, str] | None:
+    """What a file remembers; nothing where it is missing, None where it is no such file."""
     try:
-        if not path.is_file() or path.stat().st_size > _LONGEST:
+        if not path.exists():
             return {}
+        if path.stat().st_size > _LONGEST:
+            return None
         kept = json.loads(path.read_text(encoding="utf-8"))
-        readings = kept["readings"] if kept["version"] == 1 else {}
-        return {str(shape): text for shape, text in readings.items() if isinstance(text, str)}
+        if kept["version"] != 1:
+            return None
+        return {str(shape): text for shape, text in kept["readings"].items() if isinstance(text, str)}
     except (OSError, ValueError, KeyError, TypeError, AttributeError, RecursionError):
-        return {}
+        return None

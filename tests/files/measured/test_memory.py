@@ -18,6 +18,7 @@ _READING = guess(_TEXT)
 def test_the_next_run_knows(tmp_path: Path) -> None:
     path = tmp_path / "deep" / "readings.json"
     assert ReadingMemory(path).recall(shape_key(_TEXT)) is None
+    assert ReadingMemory(path).fault() == ""
     assert ReadingMemory(path).keep(shape_key(_TEXT), _READING) == ""
     assert ReadingMemory(path).recall(shape_key(_TEXT)) == _READING
     other = replace(_READING, decimal=",")
@@ -52,6 +53,9 @@ def test_a_broken_memory_is_as_none(tmp_path: Path, content: bytes) -> None:
     path.write_bytes(content)
     memory = ReadingMemory(path)
     assert memory.recall("s") is None
+    usable = content.startswith(b'{"version": 1, "readings"')  # a file of ours, if with a reading that is none
+    assert memory.fault() == ("" if usable else f"How files were read before is forgotten: {path} cannot be read.")
+    assert memory.fault() == ""
     assert memory.keep("s", _READING) == ""
     assert ReadingMemory(path).recall("s") == _READING
     assert json.loads(path.read_text(encoding="utf-8"))["version"] == 1
