@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from pathlib import Path
 
 from app.files.quoting import quote
 from app.files.writer import encode, write_file
 from app.session.document import from_text, to_text
 from app.session.document_reader import DocumentError
-from app.session.state import State
+from app.session.state import CellEntry, Choices, State
 from app.version import version
 
 SUFFIX = ".gapledger"
@@ -68,3 +69,8 @@ def opened(data: bytes, source: str) -> State:
             f"{quote(source + _BACKUP)}."
         ) from fault
     return from_text(text)
+
+
+def session_of_cell(cell: CellEntry, choices: Choices, line: str = "") -> str:
+    """The session of one cell as text, for a picture of it to carry."""
+    return to_text(State((replace(cell, ident=1),), 1, line, choices, 2), version())

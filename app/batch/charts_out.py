@@ -10,13 +10,15 @@ from app.batch.options import ChartKind
 from app.cell_curves import with_curves
 from app.cells import entry_of, note_in, read_row
 from app.figures.charts import waterfall_of
-from app.figures.export import PRESETS, ensure_gui, render
+from app.figures.export import PRESETS, Carried, ensure_gui, render
 from app.files.file_names import chart_names
 from app.files.tables import Table
 from app.files.writer import write_file
 from app.session.appraisal import appraise
 from app.session.outcome import picture_of
 from app.session.state import CellEntry, Choices
+from app.session_file import session_of_cell
+from app.version import version
 
 _PRESET = PRESETS["slide"]
 
@@ -59,7 +61,8 @@ def write_charts(
     for entry, name in zip(owners, names, strict=True):
         picture = picture_of(appraise(entry, choices), choices)
         if picture is not None:
-            write_file(folder / name, render(waterfall_of(picture), _PRESET, kind=kind))
+            carried = Carried(f"Gapledger {version()}", session_of_cell(entry, choices))
+            write_file(folder / name, render(waterfall_of(picture), _PRESET, kind=kind, carried=carried))
             count += 1
         progress.at(count)
     return count

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+from dataclasses import dataclass
 from typing import Literal
 
 from PySide6.QtCore import QBuffer, QByteArray, QIODevice, QMarginsF, QRectF, QSize, QSizeF
@@ -19,6 +20,7 @@ from app.figures.spec import PlotSpec, WaterfallSpec
 from app.figures.style import Style
 from app.figures.waterfall import paint_waterfall
 from app.figures.waterfall_layout import natural_height as waterfall_height
+from app.files.png_text import with_texts
 
 __all__ = ["PRESETS", "Background", "Kind", "Preset", "Spec", "ensure_gui", "image", "page_size", "render"]
 
@@ -123,7 +125,35 @@ def image(spec: Spec, preset: Preset, *, background: Background = "white", recor
     return picture
 
 
-def render(spec: Spec, preset: Preset, *, background: Background = "white", kind: Kind = "png") -> bytes:
+@dataclass(frozen=True)
+class Carried:
+    """What a picture file carries beside the picture, in the places that its form has for it.
+
+    Parameters
+    ----------
+    software : str
+        Name and version of the program.
+    session : str
+        The session of the cell on the picture, as text.
+    """
+
+    software: str
+    session: str
+
+
+#: Keyword of the session in a PNG picture, and its name as an attachment of a PDF page.
+SESSION_KEYWORD = "Gapledger session"
+_ATTACHMENT = "cell.gapledger"
+
+
+def render(
+    spec: Spec,
+    preset: Preset,
+    *,
+    background: Background = "white",
+    kind: Kind = "png",
+    carried: Carried | None = None,
+) -> bytes:
     """Make a chart file in memory.
 
     Parameters
@@ -136,6 +166,8 @@ def render(spec: Spec, preset: Preset, *, background: Background = "white", kind
         Ground of the picture.
     kind : {"png", "svg", "pdf"}
         Form of the file.
+    carried : Carried, optional
+        What PNG and PDF files carry beside the picture.
 
     Returns
     -------
@@ -150,10 +182,13 @@ def render(spec: Spec, preset: Preset, *, background: Background = "white", kind
     ensure_gui()
     if kind == "png":
         data = _png(image(spec, preset, background=background))
+        if data and carried is not None:
+            texts = {"Title": spec.title, "Software": carried.software, SESSION_KEYWORD: carried.session}
+            data = with_texts(data, texts)
     elif kind == "svg":
         data = _svg(spec, preset, background)
     elif kind == "pdf":
-        data = _pdf(spec, preset, background)
+        data = _pdf(spec, preset, background, carried)
     else:
         raise FigureError(f"Charts can be written as png, svg or pdf, not as {kind}.")
     if not data:
@@ -200,13 +235,15 @@ def _exact_svg_size(data: bytes, size: tuple[float, float]) -> bytes:
     return head[:start] + exact.encode() + mark + rest
 
 
-def _pdf(spec: Spec, preset: Preset, background: Background) -> bytes:
+def _pdf(spec: Spec, preset: Preset, background: Background, carried: Carried | None) -> bytes:
     size = page_size(spec, preset)
     array = QByteArray()
     buffer = QBuffer(array)
     buffer.open(QIODevice.OpenModeFlag.WriteOnly)
     writer = QPdfWriter(buffer)
-    writer.setCreator("Gapledger")
+    writer.setCreator("Gapledger" if carried is None else carried.software)
+    if carried is not None:
+        writer.addFileAttachment(_ATTACHMENT, carried.session.encode("utf-8"), "application/json")
     writer.setTitle(spec.title)
     resolution = 1200
     writer.setResolution(resolution)

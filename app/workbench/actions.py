@@ -16,12 +16,15 @@ from app.cell_curves import merged, names_curves
 from app.cells import cell_table, shelf_of
 from app.figures.charts import waterfall_of
 from app.files.file_names import safe_stem
+from app.files.png_text import PngError, is_png, texts_in
 from app.files.table_error import TableError
 from app.files.tables import load_bytes, read_table
 from app.files.write_error import WriteError
 from app.files.writer import write_text
 from app.ledger_rows import ledger_csv, ledger_tsv
 from app.session.commands import AddCells, RemoveCell, SetChoices, SetFigures
+from app.session.document import from_text
+from app.session.document_reader import DocumentError
 from app.session.outcome import Outcome
 from app.session.state import CellEntry, Choices, Value
 from app.session_file import is_session
@@ -39,6 +42,7 @@ if TYPE_CHECKING:
 
 
 _HEAD = 16384  # bytes that are enough to tell a table of cells from a file of curves
+_LARGEST_CARRIED = 64 << 20  # bytes of a session in a picture
 _WORTH_TELLING = 5  # fewer cells than this have their curves before one has read how many are to come
 
 
@@ -238,10 +242,32 @@ class Actions(QObject):
             data = load_bytes(path)
             if is_session(data):
                 self._window.files.open_data(data, path)
+            elif is_png(data):
+                self._take_picture(data, path.name)
             else:
                 self._take_data(data, path.name, path.parent)
         except TableError as fault:
             self._say(str(fault), lasting=True)
+
+    def _take_picture(self, data: bytes, source: str) -> None:
+        """Put the cell that a picture of ours carries on the shelf."""
+        from app.figures.export import SESSION_KEYWORD
+
+        try:
+            text = texts_in(data, _LARGEST_CARRIED).get(SESSION_KEYWORD)
+            state = None if text is None else from_text(text)
+        except (PngError, DocumentError) as fault:
+            raise TableError(f"{source}: {fault}") from fault
+        if state is None or not state.cells:
+            raise TableError(
+                f"{source} carries no cell: it is no picture of this program's, or a program in between left out what "
+                "was in it beside the picture."
+            )
+        self._session.do(AddCells(state.cells, "cell of a picture"))
+        names = ", ".join(cell.name for cell in state.cells)
+        other = state.choices != self._session.state.choices
+        how = f" The picture was made with shares by {state.choices.attribution}, faces {state.choices.faces}."
+        self._say(f"{names} taken from {source}.{how if other else ''}", lasting=other)
 
     def paste(self) -> None:
         """Take cells or measured curves from the clipboard, as a spreadsheet puts them there."""

@@ -23,13 +23,15 @@ from PySide6.QtWidgets import (
 from app.figures.all_plots import PLOTS
 from app.figures.charts import waterfall_of
 from app.figures.errors import FigureError
-from app.figures.export import Background, Kind, image, render
+from app.figures.export import Background, Carried, Kind, image, render
 from app.figures.presets import PRESETS
 from app.figures.spec import PlotSpec, WaterfallSpec
 from app.files.file_names import safe_stem
 from app.files.write_error import WriteError
 from app.files.writer import write_file
 from app.session.outcome import Outcomes, Picture
+from app.session_file import session_of_cell
+from app.version import version
 from app.wording import shown_name
 
 Spec = WaterfallSpec | PlotSpec
@@ -201,12 +203,20 @@ class ExportPanel(QDialog):
         path = path if path.suffix else path.with_name(f"{path.name}.{kind}")
         try:
             background: Background = self.background.currentData()
-            write_file(path, render(spec, PRESETS[self.preset.currentData()], background=background, kind=kind))
+            preset = PRESETS[self.preset.currentData()]
+            write_file(path, render(spec, preset, background=background, kind=kind, carried=self._carried()))
         except (WriteError, FigureError) as fault:
             self._tell(str(fault))
             return
         self._folder = path.parent
         self._tell(f"Saved as {path}.")
+
+    def _carried(self) -> Carried | None:
+        """The cell on the picture, so that the picture brings it back."""
+        picture = self._outcomes.current().picture
+        if picture is None:
+            return None
+        return Carried(f"Gapledger {version()}", session_of_cell(picture.entry, picture.choices))
 
     def _tell(self, sentence: str) -> None:
         self.message.setText(sentence)

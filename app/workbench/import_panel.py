@@ -279,7 +279,7 @@ class ImportPanel(QDialog):
         for at, curve in enumerate(self.curves):
             if isinstance(curve, JvSweep) and curve.lit is not False:
                 self.sweep.addItem(shown[at].title or f"curve {at + 1}", at)
-        same = self.sweep.itemText(place) == chosen  # two may have the same name
+        same = place >= 0 and self.sweep.itemText(place) == chosen  # two may have the same name
         self.sweep.setCurrentIndex(place if same else max(self.sweep.findText(chosen), 0))
         for widget in (self._from, self.sweep):
             widget.setVisible(self.sweep.count() > 1)

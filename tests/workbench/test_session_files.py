@@ -6,12 +6,13 @@ from pathlib import Path
 
 import pytest
 from PySide6.QtCore import QMimeData, QPointF, Qt, QUrl
-from PySide6.QtGui import QDragEnterEvent, QDropEvent
+from PySide6.QtGui import QDragEnterEvent, QDropEvent, QImage
 from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox
 
 from app.session.commands import RemoveCell, SetValue
 from app.session.document import to_text
 from app.session_file import backup_of
+from app.workbench.export_panel import ExportPanel
 from app.workbench.start import make_window
 from app.workbench.window import Window
 
@@ -190,3 +191,56 @@ def test_a_session_as_an_argument(window: Window, tmp_path: Path) -> None:
     assert made.files.path == path
     made.close()
     made.deleteLater()
+
+
+def test_a_picture_brings_its_cell_back(window: Window, tmp_path: Path) -> None:
+    cell = window.session.state.cells[1]
+    window.session.pick(cell.ident)
+    settle()
+    panel = ExportPanel(window.outcomes, window)
+    panel.save(tmp_path / "chart.png")
+    assert not QImage(str(tmp_path / "chart.png")).isNull()
+    wanted = window.table._model.rows
+    window.session.do(RemoveCell(cell.ident))
+    settle()
+    _drop(window, tmp_path / "chart.png")
+    assert window.session.undo_name == "cell of a picture"
+    assert window.session.state.cell is not None
+    assert window.session.state.cell.name == cell.name
+    assert window.table._model.rows == wanted  # the identical ledger
+    panel.deleteLater()
+
+
+def test_a_picture_with_curves_and_stacks(window: Window, tmp_path: Path) -> None:
+    old = Path(__file__).parents[1] / "data" / "sessions" / "form-1.gapledger"
+    window.actions_.open_file(old)
+    settle()
+    cell, rows = window.session.state.cell, window.table._model.rows
+    assert cell is not None
+    assert cell.curves.eqe is not None
+    panel = ExportPanel(window.outcomes, window)
+    panel.save(tmp_path / "chart.png")
+    _drop(window, tmp_path / "chart.png")
+    assert len(window.session.state.cells) == 3
+    assert window.table._model.rows == rows
+    panel.deleteLater()
+
+
+def test_a_picture_of_others_is_told(window: Window, tmp_path: Path) -> None:
+    picture = QImage(4, 4, QImage.Format.Format_RGB32)
+    picture.fill(0)
+    assert picture.save(str(tmp_path / "other.png"))
+    before = window.session.state
+    window.actions_.open_file(tmp_path / "other.png")
+    assert window.session.state == before
+    assert "carries no cell" in window.notices.text.text()
+
+
+def test_a_pdf_carries_its_cell(window: Window, tmp_path: Path) -> None:
+    panel = ExportPanel(window.outcomes, window)
+    panel.kind.setCurrentIndex(panel.kind.findData("pdf"))
+    panel.save(tmp_path / "chart.pdf")
+    data = (tmp_path / "chart.pdf").read_bytes()
+    assert b"/EmbeddedFile" in data
+    assert b"cell.gapledger" in data or "cell.gapledger".encode("utf-16-be") in data
+    panel.deleteLater()
