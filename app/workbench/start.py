@@ -64,6 +64,7 @@ def open_window(arguments: Sequence[str]) -> int:
     window = make_window(arguments)
     sys.excepthook = lambda kind, fault, trace: _tell(window, kind, fault, trace)
     window.files.asks = True
+    window.restore_layout()
     window.keep_journal(journal_folder())
     window.show()
     return app.exec()

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from PySide6.QtCore import QEvent, Qt, QTimer
+from PySide6.QtCore import QByteArray, QEvent, Qt, QTimer
 from PySide6.QtGui import QCloseEvent, QDragEnterEvent, QDropEvent
 from PySide6.QtWidgets import QMainWindow, QSplitter, QTabWidget, QVBoxLayout, QWidget
 
@@ -22,7 +22,7 @@ from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
 from app.workbench.plot_view import PlotView
 from app.workbench.recovery import Recovery
-from app.workbench.session_files import SessionFiles
+from app.workbench.session_files import SessionFiles, settings
 from app.workbench.shelf import Shelf
 from app.workbench.theme import Heading, Theme
 from app.workbench.waterfall_view import WaterfallView
@@ -129,6 +129,24 @@ class Window(QMainWindow):
             column.addWidget(widget)
         return column
 
+    def remember_layout(self) -> None:
+        """Keep size, place and divisions of the window for the next run."""
+        kept = settings()
+        kept.setValue("geometry", self.saveGeometry())
+        for at, splitter in enumerate(self.findChildren(QSplitter)):
+            kept.setValue(f"splitter{at}", splitter.saveState())
+
+    def restore_layout(self) -> None:
+        """Take the layout of the last run, as far as there is one; Qt keeps the window on the screen."""
+        kept = settings()
+        geometry = kept.value("geometry")
+        if isinstance(geometry, QByteArray):
+            self.restoreGeometry(geometry)
+        for at, splitter in enumerate(self.findChildren(QSplitter)):
+            state = kept.value(f"splitter{at}")
+            if isinstance(state, QByteArray):
+                splitter.restoreState(state)
+
     def keep_journal(self, folder: Path) -> None:
         """Keep a journal of unsaved work in a folder, and offer what lies there when the window has shown itself."""
         self.recovery = Recovery(self, folder)
@@ -220,6 +238,8 @@ class Window(QMainWindow):
             event.ignore()
             return
         self.actions_.close_panels()
+        if self.files.asks:
+            self.remember_layout()
         if self.recovery is not None:
             self.recovery.end()
         super().closeEvent(event)

@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 from PySide6.QtCore import QMimeData, QPointF, Qt, QUrl
 from PySide6.QtGui import QDragEnterEvent, QDropEvent, QImage
-from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox
+from PySide6.QtWidgets import QApplication, QFileDialog, QMessageBox, QSplitter
 
 from app.session.commands import RemoveCell, SetValue
 from app.session.document import to_text
@@ -244,3 +244,33 @@ def test_a_pdf_carries_its_cell(window: Window, tmp_path: Path) -> None:
     assert b"/EmbeddedFile" in data
     assert b"cell.gapledger" in data or "cell.gapledger".encode("utf-16-be") in data
     panel.deleteLater()
+
+
+def test_the_layout_is_known_in_the_next_run(window: Window) -> None:
+    window.resize(780, 690)  # the screen of the tests has 800 by 800
+    splitters = window.findChildren(QSplitter)
+    splitters[0].setSizes([250, 300, 230])
+    settle()
+    sizes = [splitter.sizes() for splitter in splitters]
+    window.remember_layout()
+    other = make_window([])
+    other.restore_layout()
+    other.show()
+    settle()
+    assert (other.width(), other.height()) == (window.width(), window.height())
+    for splitter, wanted in zip(other.findChildren(QSplitter), sizes, strict=True):
+        assert splitter.sizes() == pytest.approx(wanted, abs=2)
+    other.close()
+    other.deleteLater()
+
+
+def test_a_broken_memory_of_the_layout_does_no_harm(window: Window, home_of_its_own: Path) -> None:
+    window.remember_layout()
+    (kept,) = home_of_its_own.rglob("window.ini")
+    for content in (b"", b"[General]\ngeometry=nonsense\nsplitter0=@ByteArray(x)\nrecent=7\n", b"\xff\xfe\0\0[["):
+        kept.write_bytes(content)
+        other = make_window([])
+        other.restore_layout()
+        other.files.recent.aboutToShow.emit()
+        other.close()
+        other.deleteLater()
