@@ -35,6 +35,7 @@ if TYPE_CHECKING:
     from app.files.measured import MeasuredText, Reading, ReadingMemory
     from app.session.curves import Source
     from app.workbench.export_panel import ExportPanel
+    from app.workbench.faults import FaultPanel
     from app.workbench.help_panel import HelpPanel
     from app.workbench.import_panel import ImportPanel
     from app.workbench.stacks_panel import StacksPanel
@@ -57,6 +58,7 @@ class Actions(QObject):
         self._help: HelpPanel | None = None
         self._import: ImportPanel | None = None
         self._stacks: StacksPanel | None = None
+        self._messages: FaultPanel | None = None
         self._loader: CurveLoader | None = None
         self._wanted: list[Wanted] = []  # cells whose curve files are yet to be read
         self._to_come = 0
@@ -127,7 +129,8 @@ class Actions(QObject):
         self._menu("&Edit", (self.undo, self.redo, None, self.copy_chart, self.copy_table, self.paste_))
         known = (inflection, mean, other, self.stacks)
         self._menu("&Cell", (self.new, self.duplicate, self.remove, None, *known, None, previous, following))
-        self._menu("&Help", (help_,))
+        messages = self._action("&Messages of this run…", self.show_messages)
+        self._menu("&Help", (help_, messages))
 
     def _fill_bar(self) -> None:
         bar = QToolBar("Tools")
@@ -189,7 +192,7 @@ class Actions(QObject):
 
     def close_panels(self) -> None:
         """Close the windows beside the main one."""
-        for panel in (self._export, self._help, self._import, self._stacks):
+        for panel in (self._export, self._help, self._import, self._stacks, self._messages):
             if panel is not None:
                 panel.close()
         if self._loader is not None:
@@ -489,6 +492,15 @@ class Actions(QObject):
         self._stacks.refresh(self._window.outcomes.current())
         self._stacks.show()
         self._stacks.raise_()
+
+    def show_messages(self) -> None:
+        """Bring up what went wrong inside the program."""
+        from app.workbench.faults import FaultPanel
+
+        if self._messages is None:
+            self._messages = FaultPanel(self._window.faults, self._window)
+        self._messages.show()
+        self._messages.raise_()
 
     def show_help(self) -> None:
         """Bring up cautions, conventions and keys."""

@@ -29,8 +29,9 @@ gain.</p>
 <tr><td>Ctrl+Page Up, Ctrl+Page Down</td><td>previous, next cell</td></tr>
 <tr><td>Ctrl+Z, Ctrl+Y</td><td>undo, redo</td></tr>
 <tr><td>Ctrl+E, Ctrl+Shift+C</td><td>export a picture, copy the waterfall</td></tr>
-<tr><td>Ctrl+Shift+T, Ctrl+Shift+S</td><td>copy the ledger as a table, save it as CSV</td></tr>
-<tr><td>Ctrl+O, Ctrl+S</td><td>open a table of cells or measured curves, save the shelf as a table</td></tr>
+<tr><td>Ctrl+Shift+T, Ctrl+V</td><td>copy the ledger as a table, paste cells or measured curves</td></tr>
+<tr><td>Ctrl+O</td><td>open a session, a table of cells, measured curves, or a picture made here</td></tr>
+<tr><td>Ctrl+S, Ctrl+Shift+S</td><td>save the session, save it as another file</td></tr>
 <tr><td>Arrow keys on the waterfall or the table</td><td>pick another line</td></tr>
 <tr><td>Wheel, drag, double click on a plot</td><td>zoom, move, show all</td></tr>
 </table>

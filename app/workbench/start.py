@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 import sys
-import traceback
 from collections.abc import Sequence
 from importlib.resources import files
 from pathlib import Path
-from types import TracebackType
 
 from PySide6.QtWidgets import QApplication
 
@@ -62,22 +60,11 @@ def open_window(arguments: Sequence[str]) -> int:
     sys.setswitchinterval(0.0005)  # a worker in small numpy calls would else starve the screen for as long as it runs
     app = application(arguments)
     window = make_window(arguments)
-    sys.excepthook = lambda kind, fault, trace: _tell(window, kind, fault, trace)
+    window.faults.install()
     window.files.asks = True
     window.restore_layout()
     window.keep_journal(journal_folder())
     window.show()
-    return app.exec()
-
-
-def _tell(window: Window, kind: type[BaseException], fault: BaseException, trace: TracebackType | None) -> None:
-    """The one place where an unforeseen fault ends up: it is told, and the program goes on."""
-    print("".join(traceback.format_exception(kind, fault, trace)), file=sys.stderr)
-    if issubclass(kind, KeyboardInterrupt):
-        QApplication.quit()
-        return
-    window.notices.say(
-        f"Something went wrong inside the program ({kind.__name__}: {fault}). Your cells are still here; what you did "
-        "last may not have worked.",
-        lasting=True,
-    )
+    status = app.exec()
+    window.faults.remove()
+    return status

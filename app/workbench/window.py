@@ -17,6 +17,7 @@ from app.session.session import Session
 from app.wording import explain
 from app.workbench.actions import Actions
 from app.workbench.explain_panel import ExplainPanel
+from app.workbench.faults import Fault, FaultLog
 from app.workbench.inputs_panel import InputsPanel
 from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
@@ -52,6 +53,8 @@ class Window(QMainWindow):
         self.table = LedgerTable(self.theme)
         self.explanation = ExplainPanel(self.theme)
         self.notices = NoticeBar()
+        self.faults = FaultLog(self)
+        self.faults.added.connect(self._tell_fault)
         self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
         self.files = SessionFiles(self)
         self.recovery: Recovery | None = None
@@ -209,6 +212,13 @@ class Window(QMainWindow):
         self.table.show_rows(() if picture is None else ledger_rows(picture), line)
         explanation = explain(picture.ledger, line, picture.entry.spectrum) if picture is not None and line else None
         self.explanation.show_explanation(explanation)
+
+    def _tell_fault(self, fault: Fault) -> None:
+        self.notices.say(
+            f"Something went wrong inside the program ({fault.sentence}). Your cells are still here; what you did last "
+            "may not have worked. Help → Messages has the detail.",
+            lasting=True,
+        )
 
     def _remove(self) -> None:
         cell = self.session.state.cell

@@ -14,7 +14,6 @@ from app.files.tables import read_table
 from app.ledger_rows import ledger_csv
 from app.session.state import CellEntry
 from app.wording import explain
-from app.workbench import start
 from app.workbench.export_panel import ExportPanel
 from app.workbench.window import Window
 from physics.lines import LINES
@@ -301,7 +300,8 @@ def test_an_unforeseen_fault_is_told_and_work_goes_on(window: Window, capsys: py
     try:
         raise RuntimeError("boom")
     except RuntimeError as fault:
-        start._tell(window, RuntimeError, fault, fault.__traceback__)
+        window.faults.exception(RuntimeError, fault, fault.__traceback__)
+    settle()
     assert "boom" in window.notices.text.text()
     assert "Traceback" in capsys.readouterr().err
     _type(window, "voc", "1.1")
