@@ -206,5 +206,6 @@ def test_a_killed_program_leaves_its_work(tmp_path: Path) -> None:
 
 
 @pytest.mark.slow
-def test_a_program_killed_often_leaves_its_work(tmp_path: Path) -> None:
-    _kill_often(tmp_path, 200, 2)
+@pytest.mark.parametrize("seed", range(2, 12))
+def test_a_program_killed_often_leaves_its_work(tmp_path: Path, seed: int) -> None:
+    _kill_often(tmp_path, 20, seed)
