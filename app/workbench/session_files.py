@@ -157,7 +157,7 @@ class SessionFiles(QObject):
         self.recent.clear()
         for name in self._recent():
             action = QAction(name.replace("&", "&&"), self.recent)
-            action.triggered.connect(lambda _=False, name=name: self._window.actions_.open_file(Path(name)))
+            action.triggered.connect(lambda _=False, name=name: self._window.intake.open_file(Path(name)))
             self.recent.addAction(action)
         if self.recent.isEmpty():
             self.recent.addAction("No session yet").setEnabled(False)

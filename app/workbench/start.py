@@ -45,7 +45,7 @@ def make_window(arguments: Sequence[str]) -> Window:
     session = Session(first_state(empty=bool(arguments)))
     window = Window(session)
     for argument in arguments:
-        window.actions_.open_file(demo_path() if argument == "demo" else Path(argument))
+        window.intake.open_file(demo_path() if argument == "demo" else Path(argument))
     if "demo" in arguments:
         window.notices.say("Demo: these cells, and the group that made them, are invented.")
     if arguments and window.files.path is None:

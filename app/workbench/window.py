@@ -19,6 +19,7 @@ from app.workbench.actions import Actions
 from app.workbench.explain_panel import ExplainPanel
 from app.workbench.faults import Fault, FaultLog
 from app.workbench.inputs_panel import InputsPanel
+from app.workbench.intake import Intake
 from app.workbench.ledger_table import LedgerTable
 from app.workbench.notice_bar import NoticeBar
 from app.workbench.plot_view import PlotView
@@ -58,6 +59,7 @@ class Window(QMainWindow):
         self._heads = (Heading("Ledger"), Heading("How the picked line came about"))
         self.files = SessionFiles(self)
         self.recovery: Recovery | None = None
+        self.intake = Intake(self)
         self.actions_ = Actions(self)
         self.setCentralWidget(self._lay_out())
         self.setAcceptDrops(True)
@@ -174,7 +176,7 @@ class Window(QMainWindow):
         self.complete = True
         for plot in (self.jv_plot, self.gap_plot):
             plot.canvas.update()
-        self.actions_.load_curves()
+        self.intake.load_curves()
         if self.recovery is not None:
             self.recovery.offer()
 
@@ -240,7 +242,7 @@ class Window(QMainWindow):
         """Open what was dropped: sessions, tables of cells, or curves of the cell on show."""
         for url in event.mimeData().urls():
             if url.isLocalFile():
-                self.actions_.open_file(Path(url.toLocalFile()))
+                self.intake.open_file(Path(url.toLocalFile()))
 
     def closeEvent(self, event: QCloseEvent) -> None:
         """Close the windows beside this one, too, unless there are changes that the user wants to keep."""
@@ -248,6 +250,7 @@ class Window(QMainWindow):
             event.ignore()
             return
         self.actions_.close_panels()
+        self.intake.close()
         if self.files.asks:
             self.remember_layout()
         if self.recovery is not None:

@@ -69,8 +69,8 @@ def _write(folder: Path, seed: int) -> tuple[Path, Path]:
 def _imported(window: Window, files: tuple[Path, Path]) -> float:
     start = time.perf_counter()
     for path in files:
-        window.actions_.open_file(path)
-        panel = window.actions_._import
+        window.intake.open_file(path)
+        panel = window.intake._import
         assert panel is not None
         panel.take()
         _settle()

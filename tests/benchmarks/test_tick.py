@@ -86,8 +86,8 @@ def _shown(made: Window, cell: int) -> Iterator[Window]:
     made.resize(1280, 800)
     made.show()
     _settle()
-    if made.actions_._loader is not None:
-        made.actions_._loader.wait()
+    if made.intake._loader is not None:
+        made.intake._loader.wait()
         _settle()
     made.session.pick(made.session.state.cells[cell].ident)
     made.session.pick_line(_LINE)
@@ -104,7 +104,7 @@ def window(qapp: QApplication) -> Iterator[Window]:
     application([])
     qapp.setStyle("Fusion")
     made = make_window(["demo"])
-    made.actions_.leave_curves()
+    made.intake.leave_curves()
     yield from _shown(made, _CELL)
 
 

@@ -47,7 +47,7 @@ def window(qapp: QApplication) -> Iterator[Window]:
     application([])
     qapp.setStyle("Fusion")
     made = make_window(["demo"])
-    made.actions_.leave_curves()
+    made.intake.leave_curves()
     yield from _shown(made)
 
 

@@ -17,10 +17,10 @@ _FILES = Path(__file__).parents[2] / "resources" / "demo"
 
 def _loaded(window: Window, qtbot: QtBot) -> None:
     """Wait until all curves are there."""
-    loader = window.actions_._loader
+    loader = window.intake._loader
     assert loader is not None
     loader.wait()
-    qtbot.waitUntil(lambda: window.actions_._to_come == 0, timeout=20_000)
+    qtbot.waitUntil(lambda: window.intake._to_come == 0, timeout=20_000)
     settle()
 
 
@@ -74,7 +74,7 @@ def test_a_table_opened_later_and_a_file_that_is_missing(window: Window, qtbot: 
     (tmp_path / "jv.csv").write_bytes(sweep)
     rows = "\n".join(f"cell {k},1.42,{'jv.csv' if k else 'gone.csv'}" for k in range(8))
     (tmp_path / "cells.csv").write_text(f"name,gap_eV,jv_file\n{rows}\n")
-    window.actions_.open_file(tmp_path / "cells.csv")
+    window.intake.open_file(tmp_path / "cells.csv")
     settle()
     _loaded(window, qtbot)
     cells = [cell for cell in window.session.state.cells if cell.name.startswith("cell ")]
@@ -101,7 +101,7 @@ def test_it_is_told_how_many_are_to_come_and_what_was_left_out(
     for extra, last in (("", "The curves of 12 cells have been read."), ("\n,1.5,", "Line 14: the name is missing.")):
         (tmp_path / "cells.csv").write_text(f"name,gap_eV,jv_file\n{rows}{extra}\n")
         told.clear()
-        window.actions_.open_file(tmp_path / "cells.csv")
+        window.intake.open_file(tmp_path / "cells.csv")
         settle()
         _loaded(window, qtbot)
         qtbot.waitUntil(lambda last=last: last in told[-1], timeout=5000)  # type: ignore[misc]
@@ -115,12 +115,12 @@ def test_the_window_answers_while_many_are_read(window: Window, qtbot: QtBot, tm
     rows = "\n".join(f"cell {k},heron_1_jv.csv,heron_1_eqe.txt" for k in range(30))
     (tmp_path / "cells.csv").write_text(f"name,jv_file,eqe_file\n{rows}\n")
     ident = window.session.state.cells[0].ident
-    window.actions_.open_file(tmp_path / "cells.csv")
+    window.intake.open_file(tmp_path / "cells.csv")
     window.session.pick(ident)
-    qtbot.waitUntil(lambda: window.actions_._to_come <= 25, timeout=20_000)
+    qtbot.waitUntil(lambda: window.intake._to_come <= 25, timeout=20_000)
     window.inputs.fields["voc"].asked.emit(1.05)
     settle()
-    assert window.actions_._to_come > 0  # the change came through while files were still to be read
+    assert window.intake._to_come > 0  # the change came through while files were still to be read
     assert window.session.state.cells[0].values["voc"] == 1.05
     assert window.table._model.rows
     _loaded(window, qtbot)
@@ -132,7 +132,7 @@ def test_closing_the_window_leaves_out_what_is_not_begun(window: Window, tmp_pat
     (tmp_path / "jv.csv").write_bytes((_FILES / "plover_3_jv.txt").read_bytes())
     rows = "\n".join(f"cell {k},1.6,jv.csv" for k in range(200))
     (tmp_path / "cells.csv").write_text(f"name,gap_eV,jv_file\n{rows}\n")
-    window.actions_.open_file(tmp_path / "cells.csv")
+    window.intake.open_file(tmp_path / "cells.csv")
     window.close()
     settle()
-    assert window.actions_._to_come > 0
+    assert window.intake._to_come > 0

@@ -42,9 +42,9 @@ def _write_eqe(path: Path) -> Path:
 
 def _open(window: Window, path: Path) -> ImportPanel:
     """Open a file and take it as it was understood."""
-    window.actions_.open_file(path)
+    window.intake.open_file(path)
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     panel.take()
     settle()
@@ -125,7 +125,7 @@ def test_a_cell_without_an_eqe_is_told_what_to_do(window: Window) -> None:
 def test_a_file_that_is_neither_is_told_and_changes_nothing(window: Window, tmp_path: Path) -> None:
     (tmp_path / "letter.txt").write_text("Dear all,\nthe measurement is postponed.\nBest wishes\n")
     before = window.session.state
-    window.actions_.open_file(tmp_path / "letter.txt")
+    window.intake.open_file(tmp_path / "letter.txt")
     assert window.session.state == before
     assert "letter.txt" in window.notices.text.text()
 
@@ -135,9 +135,9 @@ def test_what_was_understood_can_be_changed_and_is_remembered(empty_window: Wind
     rows = "\n".join(f"{w},{80.0 / (1.0 + np.exp(-(EV_NM / w - 1.6) / 0.015)):.5f}" for w in range(320, 900, 5))
     (tmp_path / "bare.csv").write_text(f"a,b\n{rows}\n")
     before = window.session.state
-    window.actions_.open_file(tmp_path / "bare.csv")
+    window.intake.open_file(tmp_path / "bare.csv")
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     assert panel.isVisible()
     assert window.session.state == before  # nothing is taken before the user says so
@@ -157,7 +157,7 @@ def test_what_was_understood_can_be_changed_and_is_remembered(empty_window: Wind
     assert cell is not None
     assert cell.curves.eqe is not None
     (tmp_path / "again.csv").write_text(f"a,b\n{rows}\n")
-    window.actions_.open_file(tmp_path / "again.csv")
+    window.intake.open_file(tmp_path / "again.csv")
     settle()
     assert panel.kind.currentData() == "eqe"
     assert panel.take_button.isEnabled()
@@ -167,10 +167,10 @@ def test_what_was_understood_can_be_changed_and_is_remembered(empty_window: Wind
 def test_a_file_put_aside_changes_nothing_and_the_next_comes_up(empty_window: Window, tmp_path: Path) -> None:
     window = empty_window
     before = window.session.state
-    window.actions_.open_file(_write_eqe(tmp_path / "first.txt"))
-    window.actions_.open_file(_write_sweep(tmp_path / "second.txt"))
+    window.intake.open_file(_write_eqe(tmp_path / "first.txt"))
+    window.intake.open_file(_write_sweep(tmp_path / "second.txt"))
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     assert "first.txt" in panel.windowTitle()
     panel.reject()
@@ -187,9 +187,9 @@ def test_a_doubtful_comma_is_asked_about_and_can_be_settled(empty_window: Window
     window = empty_window
     lines = "1,000;1,935\n1,100;1,926\n1,150;1,917\n1,200;1,881"
     (tmp_path / "doubt.txt").write_text(f"Voltage (mV);Current (µA)\n{lines}\n", encoding="utf-8")
-    window.actions_.open_file(tmp_path / "doubt.txt")
+    window.intake.open_file(tmp_path / "doubt.txt")
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     assert "decimal marks or part thousands" in panel.questions.text()
     assert panel.preview.item(1, 0).text() == "0.0011"
@@ -215,7 +215,7 @@ def test_spreadsheet_cells_are_pasted(empty_window: Window) -> None:
     clipboard.setText(f"Voltage (V)\tCurrent density (mA/cm²)\n{rows}\n")
     window.actions_.paste_.trigger()
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     assert panel.isVisible()
     assert "clipboard" in panel.windowTitle()
@@ -299,9 +299,9 @@ def _combo(panel: ImportPanel, row: int, column: int) -> QComboBox:
 def test_the_preview_offers_the_sweep_that_feeds_the_figures(empty_window: Window) -> None:
     window = empty_window
     demo = Path(__file__).parents[2] / "resources" / "demo"
-    window.actions_.open_file(demo / "dunlin_2_jv.txt")
+    window.intake.open_file(demo / "dunlin_2_jv.txt")
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     assert panel.sweep.isVisible()
     assert [panel.sweep.itemText(k) for k in range(panel.sweep.count())] == [
@@ -320,11 +320,11 @@ def test_the_preview_offers_the_sweep_that_feeds_the_figures(empty_window: Windo
     assert cell is not None
     assert [sweep.label for sweep in cell.curves.sweeps] == ["light, reverse", "light, forward", "dark"]
     assert "from the sweep light, reverse." in window.notices.text.text()
-    window.actions_.open_file(demo / "plover_3_eqe.csv")
+    window.intake.open_file(demo / "plover_3_eqe.csv")
     settle()
     assert panel.sweep.isHidden()
     panel.reject()
-    window.actions_.open_file(demo / "curlew_5_jv.csv")
+    window.intake.open_file(demo / "curlew_5_jv.csv")
     settle()
     assert panel.sweep.isVisible()
     assert panel.sweep.currentIndex() == 0  # another file, another choice
@@ -333,9 +333,9 @@ def test_the_preview_offers_the_sweep_that_feeds_the_figures(empty_window: Windo
 
 def test_with_one_sweep_left_there_is_nothing_to_choose(empty_window: Window) -> None:
     window = empty_window
-    window.actions_.open_file(Path(__file__).parents[2] / "resources" / "demo" / "plover_3_jv.txt")
+    window.intake.open_file(Path(__file__).parents[2] / "resources" / "demo" / "plover_3_jv.txt")
     settle()
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     panel.sweep.setCurrentIndex(1)
     used = panel.traces.cellWidget(1, 0)
@@ -354,13 +354,13 @@ def test_a_broken_memory_is_told_once(empty_window: Window, tmp_path: Path) -> N
     home = Path(QStandardPaths.writableLocation(QStandardPaths.StandardLocation.AppConfigLocation))
     home.mkdir(parents=True, exist_ok=True)
     (home / "readings.json").write_text("{ this is none", encoding="utf-8")
-    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    window.intake.open_file(_write_eqe(tmp_path / "eqe.txt"))
     assert "readings.json cannot be read" in window.notices.text.text()
     window.notices.clear()
-    window.actions_.open_file(_write_eqe(tmp_path / "eqe.txt"))
+    window.intake.open_file(_write_eqe(tmp_path / "eqe.txt"))
     settle()
     assert window.notices.text.text() == ""
-    panel = window.actions_._import
+    panel = window.intake._import
     assert panel is not None
     panel.reject()
     panel.reject()

@@ -113,13 +113,13 @@ def test_what_cannot_be_opened_changes_nothing(window: Window, tmp_path: Path) -
     for k, bad in enumerate(broken):
         path = tmp_path / f"bad{k}.gapledger"
         path.write_text(bad, encoding="utf-8")
-        window.actions_.open_file(path)
+        window.intake.open_file(path)
         settle()
         assert window.session.state == before
         assert f"bad{k}.gapledger" in window.notices.text.text()
     assert window.windowTitle() == title
     (tmp_path / "latin.gapledger").write_bytes(text.replace("Plover", "Pl\xf6ver").encode("latin-1"))
-    window.actions_.open_file(tmp_path / "latin.gapledger")
+    window.intake.open_file(tmp_path / "latin.gapledger")
     assert "latin.gapledger.previous" in window.notices.text.text()
 
 
@@ -164,7 +164,7 @@ def test_opening_over_changes_asks_too(window: Window, tmp_path: Path, monkeypat
     asked = _answer(monkeypatch, QMessageBox.StandardButton.Cancel)
     _change(window, 1.0)
     before = window.session.state
-    window.actions_.open_file(path)
+    window.intake.open_file(path)
     assert window.session.state == before
     assert len(asked) == 1
     window.files.asks = False
@@ -213,7 +213,7 @@ def test_a_picture_brings_its_cell_back(window: Window, tmp_path: Path) -> None:
 
 def test_a_picture_with_curves_and_stacks(window: Window, tmp_path: Path) -> None:
     old = Path(__file__).parents[1] / "data" / "sessions" / "form-1.gapledger"
-    window.actions_.open_file(old)
+    window.intake.open_file(old)
     settle()
     cell, rows = window.session.state.cell, window.table._model.rows
     assert cell is not None
@@ -231,7 +231,7 @@ def test_a_picture_of_others_is_told(window: Window, tmp_path: Path) -> None:
     picture.fill(0)
     assert picture.save(str(tmp_path / "other.png"))
     before = window.session.state
-    window.actions_.open_file(tmp_path / "other.png")
+    window.intake.open_file(tmp_path / "other.png")
     assert window.session.state == before
     assert "carries no cell" in window.notices.text.text()
 

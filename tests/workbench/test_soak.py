@@ -5,6 +5,7 @@ from __future__ import annotations
 import gc
 import os
 import random
+import shutil
 import statistics
 import threading
 import time
@@ -54,7 +55,7 @@ class Monkey:
     def __init__(self, window: Window, folder: Path, seed: int) -> None:
         self.window = window
         self.chance = random.Random(seed)
-        self.folder = folder
+        self.files = [Path(shutil.copy(path, folder)) for path in _FILES]  # a session that is opened is saved to, too
         self.deeds: tuple[tuple[int, Callable[[], None]], ...] = (
             (6, self.type_text), (6, self.drag), (3, self.choose), (4, self.act), (4, self.undo), (3, self.look),
             (2, self.open_file), (1, self.size), (2, self.press), (1, self.paste), (2, self.tidy),
@@ -120,7 +121,7 @@ class Monkey:
         tabs.setCurrentIndex(self.chance.choice([k for k in range(tabs.count()) if tabs.isTabVisible(k)]))
 
     def open_file(self) -> None:
-        self.window.actions_.open_file(self.chance.choice(_FILES))
+        self.window.intake.open_file(self.chance.choice(self.files))
 
     def size(self) -> None:
         self.window.resize(self.chance.randrange(640, 1600), self.chance.randrange(480, 1000))
@@ -133,9 +134,9 @@ class Monkey:
             button.click()
 
     def paste(self) -> None:
-        path = self.chance.choice(_FILES)
+        path = self.chance.choice(self.files)
         QGuiApplication.clipboard().setText(path.read_bytes()[:20_000].decode("utf-8", "replace"))
-        self.window.actions_.paste()
+        self.window.intake.paste()
 
     def tidy(self) -> None:
         """Close the panels, and keep the shelf as long as a user's."""
@@ -164,7 +165,9 @@ def soaked(qapp: QApplication, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) 
 
 def _soak(window: Window, folder: Path, seconds: float, seed: int) -> dict[str, float]:
     window.keep_journal(folder / "journals")
-    monkey = Monkey(window, folder, seed)
+    window.faults.install()
+    (folder / "files").mkdir()
+    monkey = Monkey(window, folder / "files", seed)
     threads = threading.active_count()
     memory, events = [], 0
     start = time.monotonic()
@@ -182,6 +185,7 @@ def _soak(window: Window, folder: Path, seconds: float, seed: int) -> dict[str, 
     while session.undo_name:
         session.undo()
     settle()
+    window.faults.remove()
     assert [fault.sentence for fault in window.faults.faults] == []
     assert timers == 0
     assert threading.active_count() <= threads + 1

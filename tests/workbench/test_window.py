@@ -203,16 +203,16 @@ def test_conventions_are_undone_too(window: Window) -> None:
 def test_tables_open_and_broken_ones_are_told(window: Window, tmp_path: Path) -> None:
     good = tmp_path / "good.csv"
     good.write_text("name;gap_eV;voc_V;jsc_mA_cm2;ff_pct\na;1,6;1,1;22,5;78\n;1,6;1,1;22,5;78\nb;1,6;abc;22,5;78\n")
-    window.actions_.open_file(good)
+    window.intake.open_file(good)
     settle()
     assert "2 cells taken from good.csv" in window.notices.text.text()
     assert "Line 3" in window.notices.text.text()
     assert _cell(window).values["jsc"] == 22.5
-    window.actions_.open_file(tmp_path / "none.csv")
+    window.intake.open_file(tmp_path / "none.csv")
     assert "does not exist" in window.notices.text.text()
     (tmp_path / "bad.csv").write_bytes(b"\0\1\2")
     count = len(window.session.state.cells)
-    window.actions_.open_file(tmp_path / "bad.csv")
+    window.intake.open_file(tmp_path / "bad.csv")
     assert "not text" in window.notices.text.text()
     assert len(window.session.state.cells) == count
 
