@@ -178,7 +178,10 @@ def _killed(home: Path, chance: random.Random) -> tuple[int, float]:
         program.send_signal(signal.SIGKILL)
         end = time.time()
         edits = [json.loads(line) for line in program.stdout.read().splitlines() if line.endswith("]")]
-    (journal,) = home.rglob(f"*{SUFFIX}")
+    journals = list(home.rglob(f"*{SUFFIX}"))
+    if not journals:  # killed before the first was due
+        return len(edits), end - edits[0][1]
+    (journal,) = journals
     found = read_journal(journal)
     assert found is not None, "the journal cannot be read"
     last = max(cell.values["area"] or 0.0 for cell in found.state.cells)  # type: ignore[type-var]
@@ -189,7 +192,8 @@ def _killed(home: Path, chance: random.Random) -> tuple[int, float]:
     return len(edits), (end - lost[0]) if lost else 0.0
 
 
-def _kill_often(folder: Path, runs: int, seed: int) -> None:
+def _kill_often(folder: Path, runs: int, seed: int) -> float:
+    """Kills programs; the most work that was missing afterwards [s]."""
     chance = random.Random(seed)
     results = []
     for k in range(runs):
@@ -198,14 +202,14 @@ def _kill_often(folder: Path, runs: int, seed: int) -> None:
         results.append(_killed(home, chance))
     worst = max(lost for _, lost in results)
     print(f"{runs} kills after {sum(n for n, _ in results)} edits: at most {worst:.1f} s of work missing")
-    assert worst <= 5.0
+    return worst
 
 
 def test_a_killed_program_leaves_its_work(tmp_path: Path) -> None:
-    _kill_often(tmp_path, 2, 1)
+    assert _kill_often(tmp_path, 2, 1) < 30.0  # a guard against mishaps; the long run has the real bound
 
 
 @pytest.mark.slow
 @pytest.mark.parametrize("seed", range(2, 12))
 def test_a_program_killed_often_leaves_its_work(tmp_path: Path, seed: int) -> None:
-    _kill_often(tmp_path, 20, seed)
+    assert _kill_often(tmp_path, 20, seed) <= 5.0
