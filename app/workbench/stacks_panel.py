@@ -170,6 +170,7 @@ class StacksPanel(QDialog):
             self.contacts.append(row)
         for row in self.contacts[count:]:
             for widget in (row.name, row.value, row.suns, row.remove, row.title):
+                widget.hide()  # deleted only when Qt comes to it
                 widget.deleteLater()
         del self.contacts[count:]
         self._lay_out()
@@ -193,6 +194,8 @@ class StacksPanel(QDialog):
         self.contacts[-1].name.setFocus()
 
     def _remove(self, row: _Row) -> None:
+        if row not in self.contacts:
+            return
         at = self.contacts.index(row)
         contacts = self._given.contacts
         self._do(replace(self._given, contacts=(*contacts[:at], *contacts[at + 1 :])))
