@@ -21,6 +21,9 @@ class SeriesFault(Enum):
         "The series does not go down far enough: the maximum power of the pseudo curve lies where the light is about "
         "a twentieth of that under which the cell was measured. Measure at weaker light."
     )
+    NO_MAXIMUM = (
+        "The pseudo curve of the series has no maximum of power: check Jsc, and the units and order of the columns."
+    )
     TOO_DIM = "The series does not reach the light under which the cell was measured: measure up to its Jsc."
 
 
@@ -176,6 +179,8 @@ def pseudo_curve(series: LightSeries, jsc: float) -> PseudoCurve:
     voc = float(junction(lost[-1]))
     if at == 0:
         return PseudoCurve(voltage, current, np.nan, voc, SeriesFault.TOO_BRIGHT)
+    if at == power.size - 1:
+        return PseudoCurve(voltage, current, np.nan, voc, SeriesFault.NO_MAXIMUM)
     left, middle, right = power[at - 1 : at + 2]
     best = middle - (left - right) ** 2 / (8.0 * (left - 2.0 * middle + right))  # top of the parabola through three
     return PseudoCurve(voltage, current, float(best / (voc * jsc)), voc)

@@ -93,6 +93,11 @@ def test_hostile_names_stay_in_their_folder(command: Command, kind: str, qapp: o
         assert {(QImage(str(p)).width(), QImage(str(p)).height()) for p in charts} == {(1920, 1080)}
 
 
+def _without_progress(text: str) -> str:
+    """What was said beside how far the work is, which a slow machine is told."""
+    return "".join(line for line in text.splitlines(keepends=True) if " done" not in line)
+
+
 def test_refused_rows_get_no_chart(command: Command, qapp: object) -> None:
     done = command(f"{HEADER}\n{GOOD}\nbad,1.6,1.5,23.9,77.6\n", "--charts", "png")
     assert done.status == 1
@@ -112,7 +117,8 @@ def test_without_a_display(tmp_path: Path) -> None:
     done = in_process_of_its_own(
         str(ROOT / "resources" / "demo_cells.csv"), "--into", "o", "--charts=png", cwd=tmp_path
     )
-    assert (done.returncode, done.stderr) == (0, "")
+    assert done.returncode == 0
+    assert _without_progress(done.stderr) == ""
     assert done.stdout == "6 cells computed, 0 refused, 0 doubtful figures, 6 charts; see “o”\n"
     assert len(list((tmp_path / "o").glob("*.png"))) == 6
 
@@ -130,5 +136,5 @@ def test_without_charts_neither_qt_nor_scipy_is_loaded(tmp_path: Path) -> None:
         [sys.executable, "look.py"],
         cwd=tmp_path, env={"PYTHONPATH": str(ROOT)}, capture_output=True, text=True, timeout=60, check=False,
     )  # fmt: skip
-    assert done.stderr == ""
+    assert _without_progress(done.stderr) == ""
     assert done.stdout.splitlines()[-1] == "0 []"

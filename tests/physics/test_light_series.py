@@ -89,3 +89,11 @@ def test_what_cannot_be_told_is_told() -> None:
     assert LightSeries.of([], []).jsc.size == 0
     with pytest.raises(ValueError, match="as many"):
         LightSeries.of([1.0, 2.0], [0.5])
+
+
+def test_a_series_without_a_maximum_of_power_is_told() -> None:
+    """All voltages the same but at the brightest: no power is gained anywhere before the current is gone."""
+    series = LightSeries.of([1e-7, 2e-7, 3e-7, 1e-6], [1e-9, 1e-9, 1e-9, 5.0])
+    for jsc in (1e-6, 9.9e-7, 1e-7):
+        found = pseudo_curve(series, jsc)
+        assert np.isfinite(found.fill_factor) or found.fault is not None
