@@ -92,8 +92,6 @@ def test_what_cannot_be_told_is_told() -> None:
 
 
 def test_a_series_without_a_maximum_of_power_is_told() -> None:
-    """All voltages the same but at the brightest: no power is gained anywhere before the current is gone."""
-    series = LightSeries.of([1e-7, 2e-7, 3e-7, 1e-6], [1e-9, 1e-9, 1e-9, 5.0])
-    for jsc in (1e-6, 9.9e-7, 1e-7):
-        found = pseudo_curve(series, jsc)
-        assert np.isfinite(found.fill_factor) or found.fault is not None
+    """A voltage at the brightest level alone, which is as bright as the measurement: no power but at its very end."""
+    series = LightSeries.of([1.0, 1.5, 2.0, 2.0 + 1e-9], [1e-15, 1e-15, 1e-15, 5.0])
+    assert pseudo_curve(series, (2.0 + 1e-9) * (1.0 + 5e-7)).fault is SeriesFault.NO_MAXIMUM
