@@ -8,7 +8,6 @@ from enum import Enum
 import numpy as np
 
 from physics.quantum import Curve, Tail
-from physics.smoothing import smoothness
 from physics.units import EV_NM, Array, thermal_voltage
 
 _LEAST_POINTS = 8
@@ -144,8 +143,7 @@ def _smoothed(energy: Array, value: Array, grid: Array) -> tuple[Array, Array]:
     near = energy <= grid[-1] + 0.15
     if near.sum() < _LEAST_POINTS:
         near = np.ones_like(near)
-    x, y = _thinned(energy[near], value[near])
-    spline = make_smoothing_spline(x, y, lam=smoothness(x, y))
+    spline = make_smoothing_spline(*_thinned(energy[near], value[near]))
     return spline(grid), spline(grid, 1)
 
 
