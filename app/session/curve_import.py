@@ -35,9 +35,11 @@ class _Taking:
     sentences: list[str] = field(default_factory=list)
 
     def number(self, key: str, default: float = np.nan) -> float:
-        """A field's number as it will be [the unit of physics]; `default` where it holds none."""
-        value = self.values.get(key, self.entry.values[key])
-        return float(FIELD_BY_KEY[key].to_physics(value)) if isinstance(value, float | int) else default
+        """A field's number as it will be [the unit of physics]; `default` where it holds none that can be."""
+        value, about = self.values.get(key, self.entry.values[key]), FIELD_BY_KEY[key]
+        if not isinstance(value, float | int) or about.fault(float(value)):
+            return default
+        return float(about.to_physics(value))
 
     def put(self, key: str, value: float, source: Source) -> None:
         """Put a figure [unit of physics] into its field."""

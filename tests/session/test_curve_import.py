@@ -160,3 +160,15 @@ def test_a_lamp_is_no_curve_of_a_cell() -> None:
     rows = "\n".join(f"{w},{1.0 + 0.001 * w:.3f}" for w in range(300, 1100, 10))
     with pytest.raises(TableError, match=r"not taken by this version|holds no curve"):
         _take(_session(gap=1.6), f"Wavelength (nm),Irradiance (W/m2/nm)\n{rows}\n".encode())
+
+
+_IMPOSSIBLE = [("irradiance", -4.0), ("temperature", -400.0), ("area", -1.0), ("jsc", -3.0)]
+
+
+@pytest.mark.parametrize(("key", "value"), _IMPOSSIBLE)
+def test_a_number_that_cannot_be_does_not_stand_in_the_way(key: str, value: float) -> None:
+    session = _session(**{key: value})
+    assert _take(session, _sweep_text())
+    assert session.state.cell is not None
+    assert session.state.cell.sources["rs"] == "fit"
+    assert _take(session, _series_text())
